@@ -1,13 +1,12 @@
 #include "base/atomic_file.h"
 
 #include <fcntl.h>
+#include <fmt/format.h>
 #include <unistd.h>
 
 #include <cerrno>
 #include <cstring>
 #include <string>
-
-#include <fmt/format.h>
 
 #include "base/error.h"
 

@@ -14,6 +14,7 @@ void write_file_atomically(const std::filesystem::path& path, std::string_view c
 
 /// As above for libraries that want a path: `writer` gets the temporary path, which is then renamed.
 /// The temporary name keeps the target's ending (.fits, .fits.gz).
-void write_atomically(const std::filesystem::path& path, const std::function<void(const std::filesystem::path&)>& writer);
+void write_atomically(const std::filesystem::path& path,
+                      const std::function<void(const std::filesystem::path&)>& writer);
 
 }  // namespace thirdrung

@@ -13,7 +13,8 @@ inline constexpr double speed_of_light_angstrom_s = 2.99792458e18;
 inline constexpr double planck_times_c_erg_angstrom = 6.62607015e-27 * 2.99792458e18;
 /// 1 Jy in erg s^-1 cm^-2 Hz^-1.
 inline constexpr double jansky_cgs = 1e-23;
-/// Flux density of magnitude zero on the AB scale [Jy] (Oke & Gunn 1983, ApJ 266, 713; the value that IAU 2015 practice rounds to).
+/// Flux density of magnitude zero on the AB scale [Jy] (Oke & Gunn 1983, ApJ 266, 713; the value that IAU 2015 practice
+/// rounds to).
 inline constexpr double ab_zero_jansky = 3631.0;
 
 inline constexpr double pi = std::numbers::pi;

@@ -1,14 +1,14 @@
 #include "base/parallel.h"
 
-#include <csignal>
-#include <atomic>
-#include <exception>
-#include <mutex>
-
 #include <tbb/blocked_range.h>
 #include <tbb/info.h>
 #include <tbb/parallel_for.h>
 #include <tbb/task_arena.h>
+
+#include <atomic>
+#include <csignal>
+#include <exception>
+#include <mutex>
 
 #include "base/error.h"
 
@@ -19,18 +19,24 @@ namespace {
 std::atomic<bool> stop_flag{false};
 static_assert(std::atomic<bool>::is_always_lock_free, "a signal handler may only touch lock-free atomics");
 
-void on_signal(int) { stop_flag.store(true); }
+void on_signal(int) {
+  stop_flag.store(true);
+}
 
 }  // namespace
 
-int thread_count(int threads) { return threads > 0 ? threads : tbb::info::default_concurrency(); }
+int thread_count(int threads) {
+  return threads > 0 ? threads : tbb::info::default_concurrency();
+}
 
 void catch_stop_signals() {
   std::signal(SIGINT, on_signal);
   std::signal(SIGTERM, on_signal);
 }
 
-bool stop_requested() { return stop_flag.load(); }
+bool stop_requested() {
+  return stop_flag.load();
+}
 
 void parallel_for(std::size_t count, int threads, const std::function<void(std::size_t)>& body) {
   std::mutex guard;

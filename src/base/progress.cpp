@@ -1,10 +1,9 @@
 #include "base/progress.h"
 
+#include <fmt/format.h>
 #include <unistd.h>
 
 #include <cstdio>
-
-#include <fmt/format.h>
 
 namespace thirdrung {
 

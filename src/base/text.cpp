@@ -1,5 +1,8 @@
 #include "base/text.h"
 
+#include <fmt/format.h>
+#include <openssl/evp.h>
+
 #include <algorithm>
 #include <array>
 #include <cerrno>
@@ -9,9 +12,6 @@
 #include <numeric>
 #include <sstream>
 #include <vector>
-
-#include <fmt/format.h>
-#include <openssl/evp.h>
 
 #include "base/error.h"
 
@@ -24,7 +24,10 @@ std::size_t utf8_sequence(std::string_view text) {
   const auto byte = [&](std::size_t i) { return static_cast<unsigned char>(text[i]); };
   const unsigned char first = byte(0);
   if (first < 0x80) return 1;
-  const std::size_t length = first >= 0xC2 && first <= 0xDF ? 2 : first >= 0xE0 && first <= 0xEF ? 3 : first >= 0xF0 && first <= 0xF4 ? 4 : 0;
+  const std::size_t length = first >= 0xC2 && first <= 0xDF   ? 2
+                             : first >= 0xE0 && first <= 0xEF ? 3
+                             : first >= 0xF0 && first <= 0xF4 ? 4
+                                                              : 0;
   if (length == 0 || text.size() < length) return 0;
   for (std::size_t i = 1; i < length; ++i) {
     if ((byte(i) & 0xC0) != 0x80) return 0;
@@ -56,13 +59,16 @@ std::size_t edit_distance(std::string_view a, std::string_view b) {
 std::string read_file(const std::filesystem::path& path) {
   std::error_code error;
   if (!std::filesystem::exists(path, error)) {
-    throw InputError({path.string(), {}, {}}, "no such file", "check the name, and the folder that names are relative to");
+    throw InputError({path.string(), {}, {}}, "no such file",
+                     "check the name, and the folder that names are relative to");
   }
   if (std::filesystem::is_directory(path, error)) {
     throw InputError({path.string(), {}, {}}, "is a folder, not a file", "name a file");
   }
   std::ifstream in(path, std::ios::binary);
-  if (!in) throw InputError({path.string(), {}, {}}, fmt::format("cannot be opened ({})", std::strerror(errno)), "check its permissions");
+  if (!in)
+    throw InputError({path.string(), {}, {}}, fmt::format("cannot be opened ({})", std::strerror(errno)),
+                     "check its permissions");
   std::ostringstream content;
   content << in.rdbuf();
   return std::move(content).str();
@@ -74,7 +80,8 @@ std::string read_text_file(const std::filesystem::path& path) {
   for (std::size_t i = 0; i < content.size();) {
     const std::size_t length = utf8_sequence(std::string_view(content).substr(i));
     if (length == 0) {
-      throw InputError({path.string(), {}, {}}, fmt::format("line {} is not UTF-8 text", line), "save the file as UTF-8");
+      throw InputError({path.string(), {}, {}}, fmt::format("line {} is not UTF-8 text", line),
+                       "save the file as UTF-8");
     }
     if (content[i] == '\n') ++line;
     i += length;
@@ -106,6 +113,8 @@ std::string sha256_of_text(std::string_view text) {
   return hex;
 }
 
-std::string sha256_of_file(const std::filesystem::path& path) { return sha256_of_text(read_file(path)); }
+std::string sha256_of_file(const std::filesystem::path& path) {
+  return sha256_of_text(read_file(path));
+}
 
 }  // namespace thirdrung

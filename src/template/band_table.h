@@ -21,9 +21,9 @@ BandFlux integrate_band(const SpectralTemplate& model, const BandWeights& band, 
 
 /// Log flux in one band against q = p/s, expanded in stretch and colour.
 ///
-/// ln f(q; s, c) is a cubic Hermite spline in q whose values are polynomials in (s − 1) and c: the joint cumulants of Γ and K over the
-/// band at each q, to fourth order. Within 0.2 mmag of integrate_band for s in 0.6–1.4, c in −0.3–0.6. Linear in ln f outside the phases
-/// [q_min, q_max] it was made for.
+/// ln f(q; s, c) is a cubic Hermite spline in q whose values are polynomials in (s − 1) and c: the joint cumulants of Γ
+/// and K over the band at each q, to fourth order. Within 0.2 mmag of integrate_band for s in 0.6–1.4, c in −0.3–0.6.
+/// Linear in ln f outside the phases [q_min, q_max] it was made for.
 class BandTable {
  public:
   BandTable(const SpectralTemplate& model, const BandWeights& band, double q_min, double q_max);

@@ -7,11 +7,12 @@
 
 namespace thirdrung {
 
-/// A passband as the rest frame of one supernova sees it: flux = 10^(−0.4 m_B) Σ_j weight_j φ(p, λ_j; s, c), in uJy on the AB scale.
+/// A passband as the rest frame of one supernova sees it: flux = 10^(−0.4 m_B) Σ_j weight_j φ(p, λ_j; s, c), in uJy on
+/// the AB scale.
 ///
-/// Observed flux density f_λ(λ_o) = φ(p, λ_o/(1+z))/(1+z), dimmed by Milky Way dust in the observer frame, integrated over the photon
-/// response. The response times dust times λ_o is projected onto hat functions of a regular rest-frame grid, so the sum is
-/// exact for a φ that is linear between grid points.
+/// Observed flux density f_λ(λ_o) = φ(p, λ_o/(1+z))/(1+z), dimmed by Milky Way dust in the observer frame, integrated
+/// over the photon response. The response times dust times λ_o is projected onto hat functions of a regular rest-frame
+/// grid, so the sum is exact for a φ that is linear between grid points.
 struct BandWeights {
   std::vector<double> wavelength;  ///< Rest frame [angstrom], regular steps.
   std::vector<double> weight;      ///< [uJy per erg s^-1 cm^-2 angstrom^-1].

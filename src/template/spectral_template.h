@@ -1,10 +1,9 @@
 #pragma once
 
+#include <Eigen/Core>
 #include <string>
 #include <utility>
 #include <vector>
-
-#include <Eigen/Core>
 
 #include "template/cubic_basis.h"
 
@@ -20,18 +19,18 @@ namespace thirdrung {
 ///
 /// Gauge: B peaks at p = 0 with magnitude 0; ⟨K⟩ over B is 0 and over V is −1; Γ over B is 0 at p = 0 and p = 15.
 struct SpectralTemplate {
-  CubicBasis phase_basis;             ///< Of Φ [d].
-  CubicBasis wavelength_basis;        ///< Of Φ [angstrom].
-  Eigen::MatrixXd log_flux;           ///< Coefficients of Φ, phase × wavelength.
+  CubicBasis phase_basis;               ///< Of Φ [d].
+  CubicBasis wavelength_basis;          ///< Of Φ [angstrom].
+  Eigen::MatrixXd log_flux;             ///< Coefficients of Φ, phase × wavelength.
   CubicBasis stretch_phase_basis;       ///< Of Γ [d].
   CubicBasis stretch_wavelength_basis;  ///< Of Γ [angstrom].
   Eigen::MatrixXd stretch_response;     ///< Coefficients of Γ, phase × wavelength.
-  CubicBasis colour_basis;            ///< Of K [angstrom].
-  Eigen::VectorXd colour_law;         ///< Coefficients of K.
+  CubicBasis colour_basis;              ///< Of K [angstrom].
+  Eigen::VectorXd colour_law;           ///< Coefficients of K.
 
-  std::vector<double> scatter_phase;       ///< Nodes of ε [d].
-  std::vector<double> scatter_wavelength;  ///< Nodes of ε [angstrom].
-  Eigen::MatrixXd log_epoch_scatter;       ///< ln ε at the nodes, bilinear between them and held outside.
+  std::vector<double> scatter_phase;              ///< Nodes of ε [d].
+  std::vector<double> scatter_wavelength;         ///< Nodes of ε [angstrom].
+  Eigen::MatrixXd log_epoch_scatter;              ///< ln ε at the nodes, bilinear between them and held outside.
   std::vector<double> colour_scatter_wavelength;  ///< Nodes of κ [angstrom].
   Eigen::VectorXd log_colour_scatter;             ///< ln κ at the nodes, linear between them and held outside.
 
@@ -58,7 +57,8 @@ struct SpectralTemplate {
   Eigen::VectorXd phi_slice(double q, bool slope = false) const;
   Eigen::VectorXd gamma_slice(double q, bool slope = false) const;
 
-  /// Fractional error of one epoch, ε(p, λ), and colour scatter common to a band, κ(λ), λ the band's mean wavelength over 1 + z.
+  /// Fractional error of one epoch, ε(p, λ), and colour scatter common to a band, κ(λ), λ the band's mean wavelength
+  /// over 1 + z.
   double epoch_scatter(double p, double wavelength) const;
   double colour_scatter(double wavelength) const;
 
@@ -71,12 +71,12 @@ struct SpectralTemplate {
 
 /// How far a template is from its gauge, each in its own unit; all zero in exact arithmetic.
 struct GaugeErrors {
-  double peak_phase = 0;        ///< Phase of B maximum [d].
-  double peak_magnitude = 0;    ///< B magnitude at maximum [mag].
-  double colour_b = 0;          ///< ⟨K⟩ over B.
-  double colour_v = 0;          ///< ⟨K⟩ over V, plus 1.
-  double stretch_at_peak = 0;   ///< ⟨Γ⟩ over B at p = 0.
-  double stretch_at_15 = 0;     ///< ⟨Γ⟩ over B at p = 15 d.
+  double peak_phase = 0;       ///< Phase of B maximum [d].
+  double peak_magnitude = 0;   ///< B magnitude at maximum [mag].
+  double colour_b = 0;         ///< ⟨K⟩ over B.
+  double colour_v = 0;         ///< ⟨K⟩ over V, plus 1.
+  double stretch_at_peak = 0;  ///< ⟨Γ⟩ over B at p = 0.
+  double stretch_at_15 = 0;    ///< ⟨Γ⟩ over B at p = 15 d.
   double largest() const;
 };
 GaugeErrors gauge_errors(const SpectralTemplate& model);
