@@ -72,8 +72,8 @@ std::array<double, 15> expansion_from_moments(double log_sum, double mean_g, dou
 }  // namespace
 
 BandFlux integrate_band(const SpectralTemplate& model, const BandWeights& band, double q, double s, double c) {
-  const auto phi_basis = basis_on_band(band.wavelength);
-  const auto gamma_basis = basis_on_band(band.wavelength);
+  const auto phi_basis = basis_on_band(model.wavelength_basis, band.wavelength);
+  const auto gamma_basis = basis_on_band(model.stretch_wavelength_basis, band.wavelength);
   const auto colour_basis = basis_on_band(model.colour_basis, band.wavelength);
   const auto phi = on_band(model.phi_slice(q), phi_basis);
   const auto phi_slope = on_band(model.phi_slice(q, true), phi_basis);
@@ -112,8 +112,8 @@ BandTable::BandTable(const SpectralTemplate& model, const BandWeights& band, dou
   }
   q_.push_back(q_max);
 
-  const auto phi_basis = basis_on_band(band.wavelength);
-  const auto gamma_basis = basis_on_band(band.wavelength);
+  const auto phi_basis = basis_on_band(model.wavelength_basis, band.wavelength);
+  const auto gamma_basis = basis_on_band(model.stretch_wavelength_basis, band.wavelength);
   const auto colour_basis = basis_on_band(model.colour_basis, band.wavelength);
   const auto colour = on_band(model.colour_law, colour_basis);
   nodes_.resize(q_.size());
