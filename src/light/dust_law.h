@@ -1,6 +1,10 @@
 #pragma once
 
+#include <array>
+#include <cstddef>
 #include <string>
+
+#include "base/error.h"
 
 namespace thirdrung {
 
@@ -10,16 +14,20 @@ enum class DustLaw {
   fitzpatrick99  ///< Fitzpatrick 1999, PASP 111, 63: spline through anchors, R_V-dependent.
 };
 
-/// "odonnell94" or "fitzpatrick99"; throws InputError at `place_name` otherwise.
-DustLaw dust_law_from_name(const std::string& name);
+/// "odonnell94" or "fitzpatrick99"; throws InputError (at `place`, naming the nearest known law) otherwise.
+DustLaw dust_law_from_name(const std::string& name, const Place& place = {});
 std::string name_of(DustLaw law);
 
 /// Extinction A(λ) [mag] for reddening E(B−V) [mag] at observer-frame wavelength [angstrom].
 ///
+/// odonnell94: a(x) + b(x)/R_V with x = 1/λ in µm⁻¹ (CCM 1989 eqs. 2–5; O'Donnell 1994 eqs. 3a, 3b in 1.1 < x < 3.3).
+/// fitzpatrick99: natural cubic spline in x through the anchors of Fitzpatrick 1999, Tables 3 and 4, redward of 2700 Å;
+/// the ultraviolet formula of Fitzpatrick & Massa 1990 with the coefficients of his appendix blueward.
+///
 /// odonnell94: 1000 Å to 3.3 µm; fitzpatrick99: 910 Å to 6 µm. Outside these the nearest value is held.
 class Extinction {
  public:
-  /// @param r_v total-to-selective extinction A(V)/E(B−V), between 2 and 6.
+  /// @param r_v total-to-selective extinction A(V)/E(B−V), between 2 and 6; throws InputError outside.
   explicit Extinction(DustLaw law = DustLaw::fitzpatrick99, double r_v = 3.1);
 
   double magnitudes(double wavelength_angstrom, double ebv) const;
@@ -31,10 +39,10 @@ class Extinction {
  private:
   DustLaw law_;
   double r_v_;
-  double spline_knots_[16] = {};
-  double spline_values_[16] = {};
-  double spline_curvatures_[16] = {};
-  int spline_size_ = 0;
+  // Cubic spline of A(λ)/E(B−V) in x = 1/λ [µm⁻¹]: values and second derivatives at the anchors (fitzpatrick99 only).
+  static constexpr std::size_t anchors = 9;
+  std::array<double, anchors> spline_values_ = {};
+  std::array<double, anchors> spline_curvatures_ = {};
 };
 
 }  // namespace thirdrung

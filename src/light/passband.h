@@ -1,10 +1,10 @@
 #pragma once
 
 #include <string>
+#include <utility>
 #include <vector>
 
 #include "light/spectrum.h"
-#include "tables/table.h"
 
 namespace thirdrung {
 
@@ -32,7 +32,8 @@ class Passband {
   /// First and last wavelength with a throughput above zero beside it [angstrom].
   double blue_edge() const { return blue_edge_; }
   double red_edge() const { return red_edge_; }
-  /// Wavelengths between which all but `fraction` of the photons of a flat f_λ spectrum fall, half of it cut at each end.
+  /// Wavelengths between which all but `fraction` of the photons of a flat f_λ spectrum fall, half of it cut at each
+  /// end; the two edges for 0.
   std::pair<double, double> core_range(double fraction) const;
 
   /// Photon-weighted mean wavelength, ∫λ²T dλ / ∫λT dλ [angstrom] (Bessell & Murphy 2012, eq. A17).
@@ -43,7 +44,7 @@ class Passband {
   /// Photon rate of a source with f_ν = 3631 Jy at every wavelength (Oke & Gunn 1983).
   double photon_rate_ab_zero() const { return photon_rate_ab_zero_; }
 
-  /// The same curve with every wavelength moved by `shift` [angstrom].
+  /// The same curve with every wavelength moved by `shift_angstrom`.
   Passband shifted(double shift_angstrom) const;
 
  private:
@@ -55,5 +56,8 @@ class Passband {
   double mean_wavelength_ = 0;
   double photon_rate_ab_zero_ = 0;
 };
+
+/// AB magnitude of a spectrum in a passband, −2.5 log10(N / N of f_ν = 3631 Jy); infinite where no photon is left.
+double ab_magnitude(const Spectrum& spectrum, const Passband& passband);
 
 }  // namespace thirdrung

@@ -29,7 +29,7 @@ struct CalibratedPassband {
   double ab_offset = 0;             ///< Added to a tabulated magnitude to reach the stated system [mag].
   double zero_point_error = 0;      ///< 1σ [mag].
   double wavelength_error = 0;      ///< 1σ shift of the whole curve [angstrom].
-  std::string source;
+  std::string source = {};
 
   /// Flux on the AB scale [uJy] of a tabulated magnitude.
   double flux_of_magnitude(double magnitude) const;

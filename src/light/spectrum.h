@@ -15,7 +15,8 @@ struct Spectrum {
   double at(double wavelength_angstrom) const;
 };
 
-/// Columns `wavelength` (any length unit) and `flux`. Throws InputError if wavelengths do not increase or flux is not finite.
+/// Columns `wavelength` (any length unit) and `flux` (any unit of flux density per wavelength). Throws InputError if a
+/// unit is absent, wavelengths do not increase or a flux is not finite.
 Spectrum read_spectrum(const Table& table);
 
 }  // namespace thirdrung
