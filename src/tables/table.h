@@ -51,7 +51,8 @@ class Table {
 
   /// Real column, integers converted; missing values are NaN. Throws InputError if absent or text.
   std::vector<double> reals(const std::string& name) const;
-  /// As reals(), converted from the column's unit to `unit`. Throws InputError if the unit is absent or of another kind.
+  /// As reals(), converted from the column's unit to `unit`. Throws InputError if the unit is absent or of another
+  /// kind.
   std::vector<double> reals_in(const std::string& name, const std::string& unit) const;
   /// Text of every row; numbers are written out. Missing values are "".
   std::vector<std::string> strings(const std::string& name) const;
@@ -61,7 +62,8 @@ class Table {
   /// Adds a column; throws std::logic_error if its length differs or its name is taken.
   Table& add(Column column);
   Table& add_reals(std::string name, std::vector<double> values, std::string unit = "", std::string description = "");
-  Table& add_integers(std::string name, std::vector<std::int64_t> values, std::string unit = "", std::string description = "");
+  Table& add_integers(std::string name, std::vector<std::int64_t> values, std::string unit = "",
+                      std::string description = "");
   Table& add_strings(std::string name, std::vector<std::string> values, std::string description = "");
   Table& add_flags(std::string name, std::vector<bool> values, std::string description = "");
 
