@@ -22,7 +22,7 @@ double Spectrum::at(double wavelength_angstrom) const {
 }
 
 Spectrum read_spectrum(const Table& table) {
-  const Spectrum spectrum{table.reals_in("wavelength", "Angstrom"), table.reals_in("flux", "erg / (Angstrom cm2 s)")};
+  Spectrum spectrum{table.reals_in("wavelength", "Angstrom"), table.reals_in("flux", "erg / (Angstrom cm2 s)")};
   if (spectrum.wavelength.size() < 2) {
     throw InputError({table.origin(), {}, {}}, fmt::format("the spectrum has {} points", spectrum.wavelength.size()),
                      "give at least two");
