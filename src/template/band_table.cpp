@@ -1,6 +1,5 @@
 #include "template/band_table.h"
 
-#include <algorithm>
 #include <cmath>
 #include <stdexcept>
 
@@ -10,219 +9,148 @@ namespace thirdrung {
 
 namespace {
 
-/// Values of a spline in wavelength at the points of a band, from its coefficients and the basis there.
-std::vector<double> on_band(const Eigen::VectorXd& coefficients, const std::vector<CubicBasis::Weights>& weights) {
-  std::vector<double> out(weights.size());
-  for (std::size_t j = 0; j < weights.size(); ++j) {
-    const double* c = coefficients.data() + weights[j].first;
-    const auto& w = weights[j].value;
-    out[j] = w[0] * c[0] + w[1] * c[1] + w[2] * c[2] + w[3] * c[3];
+using Terms = Eigen::Array<double, 16, 1>;
+
+/// Place of the first monomial of total degree n; u^(n−b) c^b stands b places further.
+constexpr std::size_t first_of_degree(std::size_t n) {
+  return n * (n + 1) / 2;
+}
+
+/// 1, u, c, u², uc, c², ... to total degree 4, and a zero.
+Terms monomials(double u, double c) {
+  const double u2 = u * u;
+  const double c2 = c * c;
+  Terms m;
+  m << 1, u, c, u2, u * c, c2, u2 * u, u2 * c, u * c2, c2 * c, u2 * u2, u2 * u * c, u2 * c2, u * c * c2, c2 * c2, 0;
+  return m;
+}
+
+Terms monomials_by_u(double u, double c) {
+  const double u2 = u * u;
+  const double c2 = c * c;
+  Terms m;
+  m << 0, 1, 0, 2 * u, c, 0, 3 * u2, 2 * u * c, c2, 0, 4 * u2 * u, 3 * u2 * c, 2 * u * c2, c2 * c, 0, 0;
+  return m;
+}
+
+Terms monomials_by_c(double u, double c) {
+  const double u2 = u * u;
+  const double c2 = c * c;
+  Terms m;
+  m << 0, 0, 1, 0, u, 2 * c, 0, u2, 2 * u * c, 3 * c2, 0, u2 * u, 2 * u2 * c, 3 * u * c2, 4 * c2 * c, 0;
+  return m;
+}
+
+/// Series of ln(1 + R) from the series R without its constant term, in place, to total degree 4.
+///
+/// With the parts of total degree n (Euler's theorem on homogeneous functions, as in Knuth, "The Art of Computer
+/// Programming", vol. 2, 4.7, for one variable): n L_n = n R_n − Σ_{k=1}^{n−1} k L_k R_{n−k}.
+void logarithm_of_series(double* r) {
+  double l[15];
+  for (std::size_t n = 1; n <= 4; ++n) {
+    for (std::size_t b = 0; b <= n; ++b) {
+      double sum = static_cast<double>(n) * r[first_of_degree(n) + b];
+      for (std::size_t k = 1; k < n; ++k) {
+        double product = 0;
+        const std::size_t low = b > n - k ? b - (n - k) : 0;
+        for (std::size_t i = low; i <= std::min(k, b); ++i) {
+          product += l[first_of_degree(k) + i] * r[first_of_degree(n - k) + b - i];
+        }
+        sum -= static_cast<double>(k) * product;
+      }
+      l[first_of_degree(n) + b] = sum / static_cast<double>(n);
+    }
   }
-  return out;
+  for (std::size_t t = 1; t < 15; ++t) r[t] = l[t];
 }
 
-std::vector<CubicBasis::Weights> basis_on_band(const CubicBasis& basis, const std::vector<double>& wavelength) {
-  std::vector<CubicBasis::Weights> out;
-  out.reserve(wavelength.size());
-  for (const double lambda : wavelength) out.push_back(basis.at(lambda));
-  return out;
-}
-
-/// Exponents (i, j) of u^i c^j, in order of total degree.
-constexpr std::array<std::array<int, 2>, 15> exponents = {{{0, 0},
-                                                           {1, 0},
-                                                           {0, 1},
-                                                           {2, 0},
-                                                           {1, 1},
-                                                           {0, 2},
-                                                           {3, 0},
-                                                           {2, 1},
-                                                           {1, 2},
-                                                           {0, 3},
-                                                           {4, 0},
-                                                           {3, 1},
-                                                           {2, 2},
-                                                           {1, 3},
-                                                           {0, 4}}};
-
-/// Central moments E[g^i k^j] under the weights, to joint cumulants divided by i! j! (Kendall & Stuart, "The Advanced
-/// Theory of Statistics", vol. 1, ch. 13: for central moments the second and third joint cumulants are the moments
-/// themselves, the fourth lose the products of second moments).
-std::array<double, 15> expansion_from_moments(double log_sum, double mean_g, double mean_k,
-                                              const std::array<double, 15>& m) {
-  std::array<double, 15> k{};
-  k[0] = log_sum;
-  k[1] = mean_g;
-  k[2] = mean_k;
-  k[3] = m[3] / 2;
-  k[4] = m[4];
-  k[5] = m[5] / 2;
-  k[6] = m[6] / 6;
-  k[7] = m[7] / 2;
-  k[8] = m[8] / 2;
-  k[9] = m[9] / 6;
-  k[10] = (m[10] - 3 * m[3] * m[3]) / 24;
-  k[11] = (m[11] - 3 * m[3] * m[4]) / 6;
-  k[12] = (m[12] - m[3] * m[5] - 2 * m[4] * m[4]) / 4;
-  k[13] = (m[13] - 3 * m[5] * m[4]) / 6;
-  k[14] = (m[14] - 3 * m[5] * m[5]) / 24;
-  return k;
+/// Values of a spline in wavelength at one point.
+double along(const CubicBasis::Weights& w, const Eigen::VectorXd& coefficients) {
+  return Eigen::Map<const Eigen::Vector4d>(w.value.data()).dot(coefficients.segment<4>(w.first));
 }
 
 }  // namespace
 
 BandFlux integrate_band(const SpectralTemplate& model, const BandWeights& band, double q, double s, double c) {
-  const auto phi_basis = basis_on_band(model.wavelength_basis, band.wavelength);
-  const auto gamma_basis = basis_on_band(model.stretch_wavelength_basis, band.wavelength);
-  const auto colour_basis = basis_on_band(model.colour_basis, band.wavelength);
-  const auto phi = on_band(model.phi_slice(q), phi_basis);
-  const auto phi_slope = on_band(model.phi_slice(q, true), phi_basis);
-  const auto gamma = on_band(model.gamma_slice(q), gamma_basis);
-  const auto gamma_slope = on_band(model.gamma_slice(q, true), gamma_basis);
-  const auto colour = on_band(model.colour_law, colour_basis);
+  const Eigen::VectorXd phi = model.phi_slice(q);
+  const Eigen::VectorXd phi_slope = model.phi_slice(q, true);
+  const Eigen::VectorXd gamma = model.gamma_slice(q);
+  const Eigen::VectorXd gamma_slope = model.gamma_slice(q, true);
   BandFlux out;
   for (std::size_t j = 0; j < band.weight.size(); ++j) {
-    const double f =
-        band.weight[j] * std::exp(phi[j] + (s - 1) * gamma[j] - constants::ln_flux_per_mag * c * colour[j]);
+    const auto phi_basis = model.wavelength_basis.at(band.wavelength[j]);
+    const auto gamma_basis = model.stretch_wavelength_basis.at(band.wavelength[j]);
+    const double by_s = along(gamma_basis, gamma);
+    const double by_c =
+        -constants::ln_flux_per_mag * along(model.colour_basis.at(band.wavelength[j]), model.colour_law);
+    const double f = band.weight[j] * std::exp(along(phi_basis, phi) + (s - 1) * by_s + c * by_c);
     out.flux += f;
-    out.d_q += f * (phi_slope[j] + (s - 1) * gamma_slope[j]);
-    out.d_s += f * gamma[j];
-    out.d_c -= f * constants::ln_flux_per_mag * colour[j];
+    out.d_q += f * (along(phi_basis, phi_slope) + (s - 1) * along(gamma_basis, gamma_slope));
+    out.d_s += f * by_s;
+    out.d_c += f * by_c;
   }
   return out;
 }
 
 BandTable::BandTable(const SpectralTemplate& model, const BandWeights& band, double q_min, double q_max)
-    : mean_wavelength_(band.mean_wavelength) {
-  if (!(q_max > q_min)) throw std::invalid_argument("a band table needs a range of phases");
-  // Nodes at the template's breakpoints (where its third derivative jumps) and at points between them.
-  constexpr double widest = 1.5;
-  std::vector<double> stops = {q_min};
-  for (const CubicBasis* basis : {&model.phase_basis, &model.stretch_phase_basis}) {
-    for (const double b : basis->breakpoints()) {
-      if (b > q_min && b < q_max) stops.push_back(b);
-    }
-  }
-  stops.push_back(q_max);
-  std::sort(stops.begin(), stops.end());
-  stops.erase(std::unique(stops.begin(), stops.end()), stops.end());
-  for (std::size_t i = 0; i + 1 < stops.size(); ++i) {
-    const int parts = std::max(1, static_cast<int>(std::ceil((stops[i + 1] - stops[i]) / widest - 1e-9)));
-    for (int k = 0; k < parts; ++k) q_.push_back(stops[i] + (stops[i + 1] - stops[i]) * k / parts);
-  }
-  q_.push_back(q_max);
+    : BandTable(TemplateGrid(model, {q_min, q_max, 2.0, band.step}), band) {}
 
-  const auto phi_basis = basis_on_band(model.wavelength_basis, band.wavelength);
-  const auto gamma_basis = basis_on_band(model.stretch_wavelength_basis, band.wavelength);
-  const auto colour_basis = basis_on_band(model.colour_basis, band.wavelength);
-  const auto colour = on_band(model.colour_law, colour_basis);
-  nodes_.resize(q_.size());
-  const std::size_t points = band.weight.size();
-  std::vector<double> f(points);
-  for (std::size_t n = 0; n < q_.size(); ++n) {
-    const double q = q_[n];
-    const auto phi = on_band(model.phi_slice(q), phi_basis);
-    const auto phi_slope = on_band(model.phi_slice(q, true), phi_basis);
-    const auto gamma = on_band(model.gamma_slice(q), gamma_basis);
-    const auto gamma_slope = on_band(model.gamma_slice(q, true), gamma_basis);
-    double sum = 0;
-    double mean_g = 0;
-    double mean_k = 0;
-    for (std::size_t j = 0; j < points; ++j) {
-      f[j] = band.weight[j] * std::exp(phi[j]);
-      sum += f[j];
-      mean_g += f[j] * gamma[j];
-      mean_k -= f[j] * constants::ln_flux_per_mag * colour[j];
-    }
-    mean_g /= sum;
-    mean_k /= sum;
-    // Moments of (Γ, −0.921 K), and their derivatives in q: d/dq E[x] = E[x Φ'] − E[x] E[Φ'] + E[dx/dq].
-    std::array<double, terms> moment{};
-    std::array<double, terms> moment_slope{};
-    double mean_phi_slope = 0;
-    double mean_g_slope = 0;
-    double mean_k_slope = 0;
-    for (std::size_t j = 0; j < points; ++j) {
-      const double w = f[j] / sum;
-      mean_phi_slope += w * phi_slope[j];
-      mean_g_slope += w * (gamma_slope[j] + (gamma[j] - mean_g) * phi_slope[j]);
-      mean_k_slope += w * (-constants::ln_flux_per_mag * colour[j] - mean_k) * phi_slope[j];
-    }
-    for (std::size_t j = 0; j < points; ++j) {
-      const double w = f[j] / sum;
-      const double g = gamma[j] - mean_g;
-      const double k = -constants::ln_flux_per_mag * colour[j] - mean_k;
-      const double g_powers[5] = {1, g, g * g, g * g * g, g * g * g * g};
-      const double k_powers[5] = {1, k, k * k, k * k * k, k * k * k * k};
-      const double density = phi_slope[j] - mean_phi_slope;
-      const double dg = gamma_slope[j] - mean_g_slope;
-      const double dk = -mean_k_slope;
-      for (std::size_t t = 3; t < terms; ++t) {
-        const int a = exponents[t][0];
-        const int b = exponents[t][1];
-        const double product = g_powers[a] * k_powers[b];
-        double slope = product * density;
-        if (a > 0) slope += a * g_powers[a - 1] * k_powers[b] * dg;
-        if (b > 0) slope += b * g_powers[a] * k_powers[b - 1] * dk;
-        moment[t] += w * product;
-        moment_slope[t] += w * slope;
-      }
-    }
-    nodes_[n].value = expansion_from_moments(std::log(sum), mean_g, mean_k, moment);
-    // The fourth-order products need the chain rule; a one-sided difference of the expansion along the slope is exact
-    // to rounding because the expansion is quadratic in the moments: take the central difference.
-    constexpr double h = 1e-3;
-    std::array<double, terms> ahead = moment;
-    std::array<double, terms> behind = moment;
-    for (std::size_t t = 3; t < terms; ++t) {
-      ahead[t] += h * moment_slope[t];
-      behind[t] -= h * moment_slope[t];
-    }
-    const auto k_ahead = expansion_from_moments(0, 0, 0, ahead);
-    const auto k_behind = expansion_from_moments(0, 0, 0, behind);
-    for (std::size_t t = 3; t < terms; ++t) nodes_[n].slope[t] = (k_ahead[t] - k_behind[t]) / (2 * h);
-    nodes_[n].slope[0] = mean_phi_slope;
-    nodes_[n].slope[1] = mean_g_slope;
-    nodes_[n].slope[2] = mean_k_slope;
+BandTable::BandTable(const TemplateGrid& grid, const BandWeights& band)
+    : nodes_(grid.nodes()), mean_wavelength_(band.mean_wavelength) {
+  if (band.wavelength.empty() || std::abs(band.step - grid.wavelength_step()) > 1e-9) {
+    throw std::invalid_argument("band weights and template grid differ in their wavelength steps");
   }
+  constexpr int orders = TemplateGrid::orders;
+  // Weights times powers of K on the columns of the grid; what lies outside the grid joins its end columns.
+  const long first = std::lround(band.wavelength.front() / band.step);
+  const auto count = static_cast<long>(band.wavelength.size());
+  const Eigen::Index left = grid.column(first);
+  const Eigen::Index columns = grid.column(first + count - 1) - left + 1;
+  Eigen::VectorXd weight = Eigen::VectorXd::Zero(columns);
+  for (long j = 0; j < count; ++j) weight(grid.column(first + j) - left) += band.weight[static_cast<std::size_t>(j)];
+  const Eigen::MatrixXd weighted_colour =
+      (grid.colour_powers().middleRows(left, columns).array().colwise() * weight.array()).matrix();
+
+  const auto rows = static_cast<Eigen::Index>(nodes_->size());
+  value_.assign(nodes_->size() * stride, 0.0);
+  slope_.assign(nodes_->size() * stride, 0.0);
+  constexpr double factorial[] = {1, 1, 2, 6, 24};
+  Eigen::MatrixXd moment;
+  for (int a = 0; a < orders; ++a) {
+    moment.noalias() =
+        grid.flux_times_gamma(a).middleCols(left, columns).lazyProduct(weighted_colour.leftCols(orders - a));
+    for (int b = 0; b < orders - a; ++b) {
+      const auto term = first_of_degree(static_cast<std::size_t>(a + b)) + static_cast<std::size_t>(b);
+      const double scale = 1 / (factorial[a] * factorial[b]);
+      for (Eigen::Index n = 0; n < rows; ++n)
+        value_[static_cast<std::size_t>(n) * stride + term] = scale * moment(n, b);
+    }
+  }
+  for (std::size_t n = 0; n < nodes_->size(); ++n) {
+    double* node = value_.data() + n * stride;
+    const double inverse = 1 / node[0];
+    for (std::size_t t = 1; t < terms; ++t) node[t] *= inverse;
+    logarithm_of_series(node);
+    node[0] = std::log(node[0]);
+  }
+  nodes_->spline_slopes(value_.data(), slope_.data(), stride, stride);
 }
 
 BandFlux BandTable::at(double q, double s, double c) const {
-  const double u = s - 1;
-  const double monomial[terms] = {1,
-                                  u,
-                                  c,
-                                  u * u,
-                                  u * c,
-                                  c * c,
-                                  u * u * u,
-                                  u * u * c,
-                                  u * c * c,
-                                  c * c * c,
-                                  u * u * u * u,
-                                  u * u * u * c,
-                                  u * u * c * c,
-                                  u * c * c * c,
-                                  c * c * c * c};
-  const double by_u[terms] = {
-      0, 1, 0, 2 * u, c, 0, 3 * u * u, 2 * u * c, c * c, 0, 4 * u * u * u, 3 * u * u * c, 2 * u * c * c, c * c * c, 0};
-  const double by_c[terms] = {
-      0, 0, 1, 0, u, 2 * c, 0, u * u, 2 * u * c, 3 * c * c, 0, u * u * u, 2 * u * u * c, 3 * u * c * c, 4 * c * c * c};
-  const auto above = std::upper_bound(q_.begin() + 1, q_.end() - 1, q);
-  const auto right = static_cast<std::size_t>(above - q_.begin());
-  const std::size_t left = right - 1;
-  const double width = q_[right] - q_[left];
+  const auto& phase = nodes_->phases();
+  const std::size_t left = nodes_->interval(q);
   double h00 = 0, h10 = 0, h01 = 0, h11 = 0, d00 = 0, d10 = 0, d01 = 0, d11 = 0;
-  if (q < q_.front()) {
+  if (q < phase.front()) {
     h00 = 1;
-    h10 = q - q_.front();
+    h10 = q - phase.front();
     d10 = 1;
-  } else if (q > q_.back()) {
+  } else if (q > phase.back()) {
     h01 = 1;
-    h11 = q - q_.back();
+    h11 = q - phase.back();
     d11 = 1;
   } else {
-    const double t = (q - q_[left]) / width;
+    const double width = phase[left + 1] - phase[left];
+    const double t = (q - phase[left]) / width;
     h00 = (1 + 2 * t) * (1 - t) * (1 - t);
     h10 = width * t * (1 - t) * (1 - t);
     h01 = t * t * (3 - 2 * t);
@@ -232,25 +160,29 @@ BandFlux BandTable::at(double q, double s, double c) const {
     d01 = -d00;
     d11 = t * (3 * t - 2);
   }
-  const Node& a = nodes_[left];
-  const Node& b = nodes_[right];
-  double log_flux = 0;
-  double slope = 0;
-  double log_s = 0;
-  double log_c = 0;
-  for (std::size_t t = 0; t < terms; ++t) {
-    const double value = h00 * a.value[t] + h10 * a.slope[t] + h01 * b.value[t] + h11 * b.slope[t];
-    const double value_slope = d00 * a.value[t] + d10 * a.slope[t] + d01 * b.value[t] + d11 * b.slope[t];
-    log_flux += value * monomial[t];
-    slope += value_slope * monomial[t];
-    log_s += value * by_u[t];
-    log_c += value * by_c[t];
-  }
+  using Node = Eigen::Map<const Terms>;
+  const Node value_a(value_.data() + left * stride);
+  const Node slope_a(slope_.data() + left * stride);
+  const Node value_b(value_.data() + (left + 1) * stride);
+  const Node slope_b(slope_.data() + (left + 1) * stride);
+  const double u = s - 1;
+  const Terms m = monomials(u, c);
+  const Terms value = h00 * value_a + h10 * slope_a + h01 * value_b + h11 * slope_b;
+  const Terms by_q = d00 * value_a + d10 * slope_a + d01 * value_b + d11 * slope_b;
   BandFlux out;
-  out.flux = std::exp(log_flux);
-  out.d_q = out.flux * slope;
-  out.d_s = out.flux * log_s;
-  out.d_c = out.flux * log_c;
+  out.flux = std::exp((value * m).sum());
+  out.d_q = out.flux * (by_q * m).sum();
+  out.d_s = out.flux * (value * monomials_by_u(u, c)).sum();
+  out.d_c = out.flux * (value * monomials_by_c(u, c)).sum();
+  return out;
+}
+
+std::vector<double> BandTable::log_flux_at_nodes(double s, double c) const {
+  const Terms m = monomials(s - 1, c);
+  std::vector<double> out(nodes_->size());
+  for (std::size_t n = 0; n < out.size(); ++n) {
+    out[n] = (Eigen::Map<const Terms>(value_.data() + n * stride) * m).sum();
+  }
   return out;
 }
 

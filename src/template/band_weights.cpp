@@ -1,8 +1,8 @@
 #include "template/band_weights.h"
 
 #include <algorithm>
+#include <array>
 #include <cmath>
-#include <vector>
 
 #include "base/constants.h"
 
@@ -10,57 +10,87 @@ namespace thirdrung {
 
 namespace {
 
-/// Observer-frame wavelengths at which the response, or the rest-frame grid, has a corner.
-std::vector<double> corners(const Passband& passband, double z, const std::vector<double>& rest_grid) {
-  std::vector<double> out;
-  for (const double wavelength : passband.wavelength()) {
-    if (wavelength >= passband.blue_edge() && wavelength <= passband.red_edge()) out.push_back(wavelength);
+/// Moments ∫ T λ u^k du, k = 0..3, of one cell of the grid, u its coordinate from 0 to 1.
+using CellMoments = std::array<double, 4>;
+
+/// Walks over the pieces between the corners of response and grid, both of which it meets in order.
+class CellIntegrator {
+ public:
+  CellIntegrator(const Passband& passband, double cell_width) : passband_(passband), cell_width_(cell_width) {}
+
+  /// Adds ∫ T λ u^k over the part of cell `index` that the table of the response covers [observer frame].
+  CellMoments over(long index) {
+    const auto& wavelength = passband_.wavelength();
+    const auto& throughput = passband_.throughput();
+    const double left = static_cast<double>(index) * cell_width_;
+    const double right = left + cell_width_;
+    CellMoments out{};
+    while (piece_ + 1 < wavelength.size() && wavelength[piece_ + 1] <= left) ++piece_;
+    for (std::size_t i = piece_; i + 1 < wavelength.size() && wavelength[i] < right; ++i) {
+      const double from = std::max(left, wavelength[i]);
+      const double to = std::min(right, wavelength[i + 1]);
+      if (!(to > from) || (throughput[i] == 0.0 && throughput[i + 1] == 0.0)) continue;
+      const double slope = (throughput[i + 1] - throughput[i]) / (wavelength[i + 1] - wavelength[i]);
+      add(from, to, throughput[i] + slope * (from - wavelength[i]), slope, left, out);
+    }
+    return out;
   }
-  for (const double wavelength : rest_grid) {
-    const double observed = wavelength * (1 + z);
-    if (observed > passband.blue_edge() && observed < passband.red_edge()) out.push_back(observed);
+
+ private:
+  /// T λ is quadratic on a piece, and times u³ of degree 5: three Gauss points are exact.
+  void add(double from, double to, double start, double slope, double left, CellMoments& out) const {
+    constexpr double node = 0.7745966692414834;
+    constexpr double node_weight[3] = {5.0 / 18.0, 8.0 / 18.0, 5.0 / 18.0};
+    constexpr double node_place[3] = {0.5 * (1 - node), 0.5, 0.5 * (1 + node)};
+    const double width = to - from;
+    for (int g = 0; g < 3; ++g) {
+      const double offset = width * node_place[g];
+      const double lambda = from + offset;
+      const double u = (lambda - left) / cell_width_;
+      double term = (start + slope * offset) * lambda * width * node_weight[g];
+      for (double& moment : out) {
+        moment += term;
+        term *= u;
+      }
+    }
   }
-  std::sort(out.begin(), out.end());
-  out.erase(std::unique(out.begin(), out.end(), [](double a, double b) { return std::abs(a - b) < 1e-9; }), out.end());
-  return out;
-}
+
+  const Passband& passband_;
+  double cell_width_;
+  std::size_t piece_ = 0;
+};
 
 }  // namespace
 
 BandWeights band_weights(const Passband& passband, double z, const Extinction& dust, double ebv, double step) {
   BandWeights out;
-  const double rest_blue = passband.blue_edge() / (1 + z);
-  const double rest_red = passband.red_edge() / (1 + z);
-  const double start = std::floor(rest_blue / step) * step;
-  const auto count = static_cast<std::size_t>(std::ceil((rest_red - start) / step)) + 1;
-  out.wavelength.resize(count);
-  for (std::size_t j = 0; j < count; ++j) out.wavelength[j] = start + step * static_cast<double>(j);
-  out.weight.assign(count, 0.0);
+  out.step = step;
   out.mean_wavelength = passband.mean_wavelength() / (1 + z);
-
-  // Response × dust × λ is close to quadratic between corners, and times a hat function cubic: three Gauss points are
-  // exact to order 5.
-  constexpr double node = 0.7745966692414834;
-  constexpr double node_weight[3] = {5.0 / 18.0, 8.0 / 18.0, 5.0 / 18.0};
-  constexpr double node_place[3] = {0.5 * (1 - node), 0.5, 0.5 * (1 + node)};
-  const std::vector<double> corner = corners(passband, z, out.wavelength);
-  for (std::size_t i = 0; i + 1 < corner.size(); ++i) {
-    const double width = corner[i + 1] - corner[i];
-    for (int g = 0; g < 3; ++g) {
-      const double observed = corner[i] + width * node_place[g];
-      const double response = passband.throughput_at(observed) * observed * width * node_weight[g];
-      const double seen =
-          ebv == 0.0 ? response : response * std::exp(-constants::ln_flux_per_mag * dust.magnitudes(observed, ebv));
-      const double place = (observed / (1 + z) - start) / step;
-      const auto left = std::min(static_cast<std::size_t>(place), count - 2);
-      const double fraction = place - static_cast<double>(left);
-      out.weight[left] += seen * (1 - fraction);
-      out.weight[left + 1] += seen * fraction;
-    }
+  const double observed_step = step * (1 + z);
+  const auto first_cell = static_cast<long>(std::floor(passband.blue_edge() / observed_step));
+  const auto last_cell = static_cast<long>(std::ceil(passband.red_edge() / observed_step)) - 1;
+  const auto count = static_cast<std::size_t>(last_cell - first_cell + 4);
+  out.weight.assign(count, 0.0);
+  CellIntegrator integrator(passband, observed_step);
+  for (long cell = first_cell; cell <= last_cell; ++cell) {
+    const CellMoments m = integrator.over(cell);
+    // Cubic Lagrange polynomials on the points −1, 0, 1, 2 of the cell's coordinate, integrated term by term.
+    double* w = out.weight.data() + (cell - first_cell);
+    w[0] += (-m[3] + 3 * m[2] - 2 * m[1]) / 6;
+    w[1] += (m[3] - 2 * m[2] - m[1] + 2 * m[0]) / 2;
+    w[2] += (-m[3] + m[2] + 2 * m[1]) / 2;
+    w[3] += (m[3] - m[1]) / 6;
   }
   const double to_ujy = constants::ab_zero_jansky * 1e6 /
                         (constants::planck_times_c_erg_angstrom * passband.photon_rate_ab_zero() * (1 + z));
-  for (double& weight : out.weight) weight *= to_ujy;
+  out.wavelength.resize(count);
+  for (std::size_t j = 0; j < count; ++j) {
+    out.wavelength[j] = static_cast<double>(first_cell - 1 + static_cast<long>(j)) * step;
+    out.weight[j] *= to_ujy;
+    if (ebv != 0.0) {
+      out.weight[j] *= std::exp(-constants::ln_flux_per_mag * dust.magnitudes(out.wavelength[j] * (1 + z), ebv));
+    }
+  }
   return out;
 }
 

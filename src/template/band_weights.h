@@ -11,15 +11,17 @@ namespace thirdrung {
 /// the AB scale.
 ///
 /// Observed flux density f_λ(λ_o) = φ(p, λ_o/(1+z))/(1+z), dimmed by Milky Way dust in the observer frame, integrated
-/// over the photon response. The response times dust times λ_o is projected onto hat functions of a regular rest-frame
-/// grid, so the sum is exact for a φ that is linear between grid points.
+/// over the photon response. The response times λ_o is integrated exactly against the cubic Lagrange interpolation
+/// between the points of a regular rest-frame grid, so the sum is exact where φ times the dust's transmission is cubic
+/// between them. A few weights at the band's feet may be slightly negative.
 struct BandWeights {
-  std::vector<double> wavelength;  ///< Rest frame [angstrom], regular steps.
+  std::vector<double> wavelength;  ///< Rest frame [angstrom], multiples of the step.
   std::vector<double> weight;      ///< [uJy per erg s^-1 cm^-2 angstrom^-1].
   double mean_wavelength = 0;      ///< Photon-weighted mean of the passband over 1 + z [angstrom].
+  double step = 0;                 ///< [angstrom].
 };
 
 /// @param z heliocentric redshift. @param ebv Milky Way E(B−V) [mag]. @param step rest-frame grid [angstrom].
-BandWeights band_weights(const Passband& passband, double z, const Extinction& dust, double ebv, double step = 10.0);
+BandWeights band_weights(const Passband& passband, double z, const Extinction& dust, double ebv, double step = 20.0);
 
 }  // namespace thirdrung
