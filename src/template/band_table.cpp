@@ -11,33 +11,33 @@ namespace {
 
 using Terms = Eigen::Array<double, 16, 1>;
 
-/// Place of the first monomial of total degree n; u^(n−b) c^b stands b places further.
+/// Place of the first monomial of total degree n; u^(n−b) v^b stands b places further.
 constexpr std::size_t first_of_degree(std::size_t n) {
   return n * (n + 1) / 2;
 }
 
-/// 1, u, c, u², uc, c², ... to total degree 4, and a zero.
-Terms monomials(double u, double c) {
+/// 1, u, v, u², uv, v², ... to total degree 4, and a zero.
+Terms monomials(double u, double v) {
   const double u2 = u * u;
-  const double c2 = c * c;
+  const double v2 = v * v;
   Terms m;
-  m << 1, u, c, u2, u * c, c2, u2 * u, u2 * c, u * c2, c2 * c, u2 * u2, u2 * u * c, u2 * c2, u * c * c2, c2 * c2, 0;
+  m << 1, u, v, u2, u * v, v2, u2 * u, u2 * v, u * v2, v2 * v, u2 * u2, u2 * u * v, u2 * v2, u * v * v2, v2 * v2, 0;
   return m;
 }
 
-Terms monomials_by_u(double u, double c) {
+Terms monomials_by_u(double u, double v) {
   const double u2 = u * u;
-  const double c2 = c * c;
+  const double v2 = v * v;
   Terms m;
-  m << 0, 1, 0, 2 * u, c, 0, 3 * u2, 2 * u * c, c2, 0, 4 * u2 * u, 3 * u2 * c, 2 * u * c2, c2 * c, 0, 0;
+  m << 0, 1, 0, 2 * u, v, 0, 3 * u2, 2 * u * v, v2, 0, 4 * u2 * u, 3 * u2 * v, 2 * u * v2, v2 * v, 0, 0;
   return m;
 }
 
-Terms monomials_by_c(double u, double c) {
+Terms monomials_by_v(double u, double v) {
   const double u2 = u * u;
-  const double c2 = c * c;
+  const double v2 = v * v;
   Terms m;
-  m << 0, 0, 1, 0, u, 2 * c, 0, u2, 2 * u * c, 3 * c2, 0, u2 * u, 2 * u2 * c, 3 * u * c2, 4 * c2 * c, 0;
+  m << 0, 0, 1, 0, u, 2 * v, 0, u2, 2 * u * v, 3 * v2, 0, u2 * u, 2 * u2 * v, 3 * u * v2, 4 * v2 * v, 0;
   return m;
 }
 
@@ -166,19 +166,20 @@ BandFlux BandTable::at(double q, double s, double c) const {
   const Node value_b(value_.data() + (left + 1) * stride);
   const Node slope_b(slope_.data() + (left + 1) * stride);
   const double u = s - 1;
-  const Terms m = monomials(u, c);
+  const double v = c - TemplateGrid::centre_colour;
+  const Terms m = monomials(u, v);
   const Terms value = h00 * value_a + h10 * slope_a + h01 * value_b + h11 * slope_b;
   const Terms by_q = d00 * value_a + d10 * slope_a + d01 * value_b + d11 * slope_b;
   BandFlux out;
   out.flux = std::exp((value * m).sum());
   out.d_q = out.flux * (by_q * m).sum();
-  out.d_s = out.flux * (value * monomials_by_u(u, c)).sum();
-  out.d_c = out.flux * (value * monomials_by_c(u, c)).sum();
+  out.d_s = out.flux * (value * monomials_by_u(u, v)).sum();
+  out.d_c = out.flux * (value * monomials_by_v(u, v)).sum();
   return out;
 }
 
 std::vector<double> BandTable::log_flux_at_nodes(double s, double c) const {
-  const Terms m = monomials(s - 1, c);
+  const Terms m = monomials(s - 1, c - TemplateGrid::centre_colour);
   std::vector<double> out(nodes_->size());
   for (std::size_t n = 0; n < out.size(); ++n) {
     out[n] = (Eigen::Map<const Terms>(value_.data() + n * stride) * m).sum();

@@ -23,13 +23,13 @@ BandFlux integrate_band(const SpectralTemplate& model, const BandWeights& band, 
 
 /// Log flux in one band against q = p/s, expanded in stretch and colour.
 ///
-/// ln f(q; s, c) is a cubic spline in q whose values are polynomials of total degree 4 in (s − 1) and c, the logarithm
-/// of the band's moment series: f = Σ (s − 1)^a c^b M_ab / (a! b!), M_ab = Σ_j weight_j e^Φ Γ^a (−0.921 K)^b.
-/// Within 0.2 mmag of integrate_band for s in 0.6–1.4, c in −0.3–0.6.
-/// Linear in ln f outside the phases of its nodes.
+/// ln f(q; s, c) is a cubic spline in q whose values are polynomials of total degree 4 in u = s − 1 and v = c − 0.2,
+/// the logarithm of the band's moment series f = Σ u^a v^b M_ab / (a! b!), M_ab = Σ_j weight_j e^(Φ + 0.2 k) Γ^a k^b
+/// with k = −0.921 K. Within 0.2 mmag of integrate_band for s in 0.6–1.4, c in −0.3–0.6. Linear in ln f outside the
+/// phases of its nodes.
 class BandTable {
  public:
-  static constexpr std::size_t terms = 15;  ///< Monomials u^a c^b with a + b <= 4, by total degree.
+  static constexpr std::size_t terms = 15;  ///< Monomials u^a v^b with a + b <= 4, by total degree.
 
   /// @param band made with the wavelength step of `grid`; throws std::invalid_argument otherwise.
   BandTable(const TemplateGrid& grid, const BandWeights& band);

@@ -88,7 +88,7 @@ TemplateGrid::TemplateGrid(SpectralTemplate model, const TemplateGridOptions& op
   const Eigen::VectorXd k =
       -constants::ln_flux_per_mag * along(model_.colour_law, basis_at(model_.colour_basis, wavelength));
   colour_powers_.resize(columns, orders);
-  colour_powers_.col(0).setOnes();
+  colour_powers_.col(0) = (centre_colour * k.array()).exp();
   for (Eigen::Index b = 1; b < orders; ++b) colour_powers_.col(b) = colour_powers_.col(b - 1).cwiseProduct(k);
 }
 

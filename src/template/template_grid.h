@@ -18,13 +18,15 @@ struct TemplateGridOptions {
   double wavelength_step = 20.0;  ///< [angstrom]; must be that of the BandWeights it is used with.
 };
 
-/// One template at fixed phases and rest-frame wavelengths: e^Φ Γ^a for a = 0..4, and powers of −0.921 K.
+/// One template at fixed phases and rest-frame wavelengths: e^Φ Γ^a for a = 0..4, and powers of k = −0.921 K.
 ///
 /// Made once a template. It turns the building of a BandTable into a few small matrix products, since neither Φ, Γ nor
 /// K depends on the supernova.
 class TemplateGrid {
  public:
   static constexpr int orders = 5;  ///< Powers 0..4 of Γ and of K.
+  /// Colour about which band tables are expanded [mag], amid those that occur.
+  static constexpr double centre_colour = 0.2;
 
   explicit TemplateGrid(SpectralTemplate model, const TemplateGridOptions& options = {});
 
@@ -39,7 +41,7 @@ class TemplateGrid {
   const Eigen::MatrixXd& flux_times_gamma(int power) const {
     return flux_times_gamma_[static_cast<std::size_t>(power)];
   }
-  /// (−0.921 K)^power in column `power`, one row a wavelength.
+  /// k^power e^(k centre_colour) in column `power`, one row a wavelength.
   const Eigen::MatrixXd& colour_powers() const { return colour_powers_; }
 
  private:
