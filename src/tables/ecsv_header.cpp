@@ -40,7 +40,7 @@ constexpr std::array<Datatype, 14> kDatatypes = {{
     {"uint16", Kind::integer, 0, 65535},
     {"uint32", Kind::integer, 0, 4294967295LL},
     {"uint64", Kind::integer, 0, kMost},  // larger values do not fit and are refused row by row
-    {"float16", Kind::single, 0, 0},
+    {"float16", Kind::half, 0, 0},
     {"float32", Kind::single, 0, 0},
     {"float64", Kind::real, 0, 0},
     {"float128", Kind::real, 0, 0},
@@ -115,12 +115,26 @@ std::string meta_text(const YAML::Node& node) {
   return emitter.c_str();
 }
 
+/// Astropy's notes on how it took its own objects apart. The columns stand for themselves here, but for masks that
+/// were put into columns of their own: passing over those would take missing values for real ones.
+void check_serialized(const YAML::Node& node, const std::string& file) {
+  if (!node.IsMap()) return;
+  for (const auto& entry : node) {
+    if (entry.second.IsMap() && entry.second["mask"]) {
+      throw InputError({file, {}, scalar(entry.first)}, "its missing values are marked by a mask in another column",
+                       "write the table with empty fields for missing values");
+    }
+  }
+}
+
 /// "meta" is a map, or the ordered form of one: a list of maps with one key each.
-void read_meta(const YAML::Node& node, EcsvHeader& header) {
+void read_meta(const YAML::Node& node, const std::string& file, EcsvHeader& header) {
   const auto add = [&](const YAML::Node& map) {
     for (const auto& entry : map) {
-      // Astropy's notes on how it took its own objects apart; of no meaning here.
-      if (scalar(entry.first) == "__serialized_columns__") continue;
+      if (scalar(entry.first) == "__serialized_columns__") {
+        check_serialized(entry.second, file);
+        continue;
+      }
       header.meta.emplace_back(scalar(entry.first), meta_text(entry.second));
     }
   };
@@ -176,7 +190,7 @@ EcsvHeader parse_ecsv_header(std::string_view text, const std::string& file) {
     }
   }
   read_delimiter(root["delimiter"], file, header);
-  if (root["meta"]) read_meta(root["meta"], header);
+  if (root["meta"]) read_meta(root["meta"], file, header);
   return header;
 }
 

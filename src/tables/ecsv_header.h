@@ -10,7 +10,7 @@ namespace thirdrung {
 
 /// What an ECSV header says of one column.
 struct EcsvColumn {
-  enum class Kind { real, single, integer, flag, text };
+  enum class Kind { real, single, half, integer, flag, text };
 
   std::string name;
   std::string unit;

@@ -1,5 +1,7 @@
 #include <fmt/format.h>
 
+#include <algorithm>
+#include <cmath>
 #include <limits>
 #include <memory>
 #include <utility>
@@ -15,6 +17,14 @@ namespace thirdrung {
 
 namespace {
 
+/// Nearest number of half precision (IEEE 754-2019, binary16: 11 significant bits, smallest step 2^-24).
+double rounded_to_half(double value) {
+  if (!std::isfinite(value) || value == 0) return value;
+  const double step = std::ldexp(1.0, std::max(std::ilogb(value) - 10, -24));
+  const double rounded = std::nearbyint(value / step) * step;
+  return std::abs(rounded) > 65504 ? std::copysign(HUGE_VAL, value) : rounded;
+}
+
 /// Collects the cells of one column in its declared type.
 class CellReader {
  public:
@@ -22,6 +32,7 @@ class CellReader {
     switch (declared.kind) {
       case EcsvColumn::Kind::real:
       case EcsvColumn::Kind::single:
+      case EcsvColumn::Kind::half:
         values_ = Column::Reals();
         break;
       case EcsvColumn::Kind::integer:
@@ -42,6 +53,7 @@ class CellReader {
     switch (declared_.kind) {
       case EcsvColumn::Kind::real:
       case EcsvColumn::Kind::single:
+      case EcsvColumn::Kind::half:
         std::get<Column::Reals>(values_).push_back(real(field, missing, row));
         break;
       case EcsvColumn::Kind::integer:
@@ -66,6 +78,7 @@ class CellReader {
     const auto value = parse_real(field.text);
     if (!value) fail(field, row, "a number");
     if (declared_.kind == EcsvColumn::Kind::single) return static_cast<double>(static_cast<float>(*value));
+    if (declared_.kind == EcsvColumn::Kind::half) return rounded_to_half(*value);
     return *value;
   }
 

@@ -139,8 +139,10 @@ void FitsHandle::add_checksums() const {
     int status = 0;
     fits_update_key_str(fits_, "CHECKSUM", zeros, "HDU checksum", &status);
     fits_update_key_str(fits_, "DATASUM", "0", "data unit checksum", &status);
+    fits_flush_file(fits_, &status);  // writes the END card, which counts
     fits_get_chksum(fits_, &data, &whole, &status);
     fits_update_key_str(fits_, "DATASUM", fmt::format("{}", data).c_str(), nullptr, &status);
+    fits_flush_file(fits_, &status);
     fits_get_chksum(fits_, &data, &whole, &status);
     check(status);
     std::array<char, FLEN_VALUE> code{};

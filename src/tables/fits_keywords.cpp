@@ -143,6 +143,10 @@ void write_keyword(const FitsHandle& fits, const FitsKeyword& keyword) {
   }
 }
 
+void write_column_comment(const FitsHandle& fits, int number, const std::string& text) {
+  write_text(fits, fmt::format("TCOMM{}", number), ascii_escaped(text), "");
+}
+
 std::optional<std::string> read_keyword(const FitsHandle& fits, const std::string& key) {
   char* text = nullptr;
   int status = 0;

@@ -30,6 +30,9 @@ class FitsHandle;
 /// Writes a keyword into the current HDU. A key that FITS keeps for itself (NAXIS, DATE...) gets "META_" before it.
 void write_keyword(const FitsHandle& fits, const FitsKeyword& keyword);
 
+/// Writes the description of a column, TCOMMn.
+void write_column_comment(const FitsHandle& fits, int number, const std::string& text);
+
 /// Value of a keyword of the current HDU as text ("T" and "F" for truth values), or nothing.
 std::optional<std::string> read_keyword(const FitsHandle& fits, const std::string& key);
 

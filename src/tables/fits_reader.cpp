@@ -98,9 +98,13 @@ FitsImage FitsReader::image(const std::string& part) const {
                       : std::accumulate(result.shape.begin(), result.shape.end(), std::size_t{1}, std::multiplies<>());
   result.values.resize(size);
   if (size > 0) {
-    double null = std::numeric_limits<double>::quiet_NaN();
+    // As in read_real_column(): among floating-point numbers CFITSIO must not look for missing ones.
+    double nan = std::numeric_limits<double>::quiet_NaN();
+    int bits = 0;
     int any = 0;
-    fits_read_img(fits.get(), TDOUBLE, 1, static_cast<LONGLONG>(size), &null, result.values.data(), &any, &status);
+    fits_get_img_type(fits.get(), &bits, &status);
+    fits_read_img(fits.get(), TDOUBLE, 1, static_cast<LONGLONG>(size), bits < 0 ? nullptr : &nan, result.values.data(),
+                  &any, &status);
     fits.check(status);
   }
   result.unit = read_keyword(fits, "BUNIT").value_or("");
@@ -137,14 +141,7 @@ FitsImage FitsReader::array_column(const std::string& part, const std::string& c
   }
   FitsImage result;
   result.shape = {static_cast<std::size_t>(rows), static_cast<std::size_t>(repeat)};
-  result.values.resize(result.shape[0] * result.shape[1]);
-  if (!result.values.empty()) {
-    double null = std::numeric_limits<double>::quiet_NaN();
-    int any = 0;
-    fits_read_col(fits.get(), TDOUBLE, number, 1, 1, static_cast<LONGLONG>(result.values.size()), &null,
-                  result.values.data(), &any, &status);
-    fits.check(status);
-  }
+  result.values = read_real_column(fits, number, result.shape[0] * result.shape[1]);
   result.unit = read_keyword(fits, fmt::format("TUNIT{}", number)).value_or("");
   return result;
 }

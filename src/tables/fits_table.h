@@ -1,6 +1,7 @@
 #pragma once
 
 #include <string>
+#include <vector>
 
 #include "tables/fits_keywords.h"
 #include "tables/table.h"
@@ -26,5 +27,9 @@ Table parse_fits_table(std::string content, const std::string& file);
 void append_fits_table(const FitsHandle& fits, const Table& table, const std::string& name,
                        const FitsKeywords& keywords);
 Table read_fits_table(const FitsHandle& fits);
+
+/// The first `count` numbers of a column of the table that the handle stands on, missing ones as NaN. (Where CFITSIO
+/// looks for missing values among floating-point numbers it takes infinity for one, and denormal numbers for 0.)
+std::vector<double> read_real_column(const FitsHandle& fits, int number, std::size_t count);
 
 }  // namespace thirdrung

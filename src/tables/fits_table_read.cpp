@@ -62,11 +62,9 @@ std::vector<Value> read_values(const FitsHandle& fits, int number, int type, std
 }
 
 void read_reals(const FitsHandle& fits, int number, std::size_t rows, Column& column) {
-  std::vector<char> nulls;
-  auto values = read_values<double>(fits, number, TDOUBLE, rows, nulls);
-  for (std::size_t row = 0; row < rows; ++row) {
-    if (nulls[row] != 0) values[row] = std::numeric_limits<double>::quiet_NaN();
-  }
+  auto values = read_real_column(fits, number, rows);
+  std::vector<char> nulls(rows);
+  std::transform(values.begin(), values.end(), nulls.begin(), [](double value) { return std::isnan(value) ? 1 : 0; });
   column.values = std::move(values);
   column.missing = mask_of(nulls);
 }
@@ -133,6 +131,21 @@ Column read_column(const FitsHandle& fits, int number, const Form& form, std::si
 }
 
 }  // namespace
+
+std::vector<double> read_real_column(const FitsHandle& fits, int number, std::size_t count) {
+  std::vector<double> values(count);
+  if (count == 0) return values;
+  int stored = 0;
+  int any = 0;
+  int status = 0;
+  fits_get_coltype(fits.get(), number, &stored, nullptr, nullptr, &status);
+  double nan = std::numeric_limits<double>::quiet_NaN();
+  const bool is_floating = stored == TFLOAT || stored == TDOUBLE;
+  fits_read_col(fits.get(), TDOUBLE, number, 1, 1, static_cast<LONGLONG>(count), is_floating ? nullptr : &nan,
+                values.data(), &any, &status);
+  fits.check(status);
+  return values;
+}
 
 Table read_fits_table(const FitsHandle& fits) {
   LONGLONG rows = 0;

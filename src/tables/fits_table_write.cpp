@@ -12,13 +12,23 @@ namespace thirdrung {
 
 namespace {
 
+std::size_t text_width(const Column& column) {
+  std::size_t longest = 1;
+  for (const std::string& text : std::get<Column::Strings>(column.values)) longest = std::max(longest, text.size());
+  return longest;
+}
+
 std::string form_of(const Column& column) {
   if (std::holds_alternative<Column::Reals>(column.values)) return "1D";
   if (std::holds_alternative<Column::Integers>(column.values)) return "1K";
   if (std::holds_alternative<Column::Flags>(column.values)) return "1L";
-  std::size_t longest = 1;
-  for (const std::string& text : std::get<Column::Strings>(column.values)) longest = std::max(longest, text.size());
-  return fmt::format("{}A", longest);
+  return fmt::format("{}A", text_width(column));
+}
+
+/// Bytes of one cell.
+std::size_t width_of(const Column& column) {
+  if (std::holds_alternative<Column::Flags>(column.values)) return 1;
+  return std::holds_alternative<Column::Strings>(column.values) ? text_width(column) : 8;
 }
 
 /// A whole number that no row has, to stand for "missing".
@@ -65,23 +75,28 @@ void write_flags(const FitsHandle& fits, int number, const Column& column) {
   fits.check(status);
 }
 
-void write_texts(const FitsHandle& fits, int number, const Column& column) {
+/// Texts end with zero bytes: CFITSIO's own filling with blanks would make a missing text look like one of blanks.
+void write_texts(const FitsHandle& fits, std::size_t first_byte, const Column& column) {
   const auto& texts = std::get<Column::Strings>(column.values);
-  std::vector<char*> pointers(texts.size());
-  std::transform(texts.begin(), texts.end(), pointers.begin(),
-                 [](const std::string& text) { return const_cast<char*>(text.c_str()); });
+  const std::size_t width = text_width(column);
+  std::vector<unsigned char> cell(width);
   int status = 0;
-  fits_write_col(fits.get(), TSTRING, number, 1, 1, static_cast<LONGLONG>(pointers.size()), pointers.data(), &status);
+  for (std::size_t row = 0; row < texts.size(); ++row) {
+    std::fill(cell.begin(), cell.end(), static_cast<unsigned char>(0));
+    if (!column.is_missing(row)) std::copy(texts[row].begin(), texts[row].end(), cell.begin());
+    fits_write_tblbytes(fits.get(), static_cast<LONGLONG>(row) + 1, static_cast<LONGLONG>(first_byte) + 1,
+                        static_cast<LONGLONG>(width), cell.data(), &status);
+  }
   fits.check(status);
 }
 
-void write_column(const FitsHandle& fits, int number, const Column& column) {
-  if (!column.description.empty()) write_keyword(fits, {fmt::format("TCOMM{}", number), column.description, ""});
+void write_column(const FitsHandle& fits, int number, std::size_t first_byte, const Column& column) {
+  if (!column.description.empty()) write_column_comment(fits, number, column.description);
   if (column.size() == 0) return;
   if (std::holds_alternative<Column::Reals>(column.values)) return write_reals(fits, number, column);
   if (std::holds_alternative<Column::Integers>(column.values)) return write_integers(fits, number, column);
   if (std::holds_alternative<Column::Flags>(column.values)) return write_flags(fits, number, column);
-  write_texts(fits, number, column);
+  write_texts(fits, first_byte, column);
 }
 
 }  // namespace
@@ -108,7 +123,11 @@ void append_fits_table(const FitsHandle& fits, const Table& table, const std::st
                   name.empty() ? nullptr : name.c_str(), &status);
   fits.check(status);
   int number = 0;
-  for (const Column& column : table.columns()) write_column(fits, ++number, column);
+  std::size_t first_byte = 0;
+  for (const Column& column : table.columns()) {
+    write_column(fits, ++number, first_byte, column);
+    first_byte += width_of(column);
+  }
   for (const auto& [key, value] : table.meta()) write_keyword(fits, {key, value, ""});
   for (const FitsKeyword& keyword : keywords) write_keyword(fits, keyword);
 }
