@@ -144,8 +144,9 @@ std::vector<float> FitsInput::image() const {
   std::vector<long> first(size.size(), 1);
   int status = 0;
   float null_value = blank;
-  fits_read_pix(handle(file_), TFLOAT, first.data(), static_cast<LONGLONG>(count), &null_value, pixels.data(), nullptr,
-                &status);
+  int any_blank = 0;  // CFITSIO writes to it unasked where it meets a NaN
+  fits_read_pix(handle(file_), TFLOAT, first.data(), static_cast<LONGLONG>(count), &null_value, pixels.data(),
+                &any_blank, &status);
   check(status, "reading its pixels");
   return pixels;
 }
@@ -170,8 +171,9 @@ std::vector<float> FitsInput::column(const std::string& name) const {
   check(status, "reading its columns");
   std::vector<float> values(static_cast<std::size_t>(repeat) * static_cast<std::size_t>(rows));
   float null_value = blank;
+  int any_blank = 0;  // CFITSIO writes to it unasked where it meets a NaN
   fits_read_col(handle(file_), TFLOAT, index, 1, 1, static_cast<LONGLONG>(values.size()), &null_value, values.data(),
-                nullptr, &status);
+                &any_blank, &status);
   check(status, "reading its values");
   return values;
 }

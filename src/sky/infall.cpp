@@ -27,6 +27,24 @@ const Attractor* region_of(double v_helio, const Galactic& direction, std::span<
   return found == attractors.end() ? nullptr : &*found;
 }
 
+double cos_angle(const Attractor& attractor, const Galactic& direction) {
+  return dot(unit_vector(attractor.centre.l, attractor.centre.b), unit_vector(direction.l, direction.b));
+}
+
+// The published sum; a galaxy in an attractor's region (`home`) is put at that attractor's centre and velocity.
+double published_z_flow(double v_helio, const Galactic& direction, const Attractor* home,
+                        const InfallOptions& options) {
+  const Galactic at = home != nullptr ? home->centre : direction;
+  const double to_local_group = home != nullptr ? 0.0 : local_group_correction(direction);
+  const double v_start = home != nullptr ? home->velocity : v_helio;
+  const double v_local_group = v_start + to_local_group;
+  double correction = to_local_group;
+  for (const Attractor& a : options.attractors) {
+    correction += our_infall(a, at, options) + galaxy_infall(a, v_local_group, at, options);
+  }
+  return (1.0 + v_start / speed_of_light_km_s) * (1.0 + correction / speed_of_light_km_s) - 1.0;
+}
+
 }  // namespace
 
 std::vector<Attractor> published_attractors() {
@@ -43,46 +61,38 @@ double local_group_correction(const Galactic& direction) {
   return -79.0 * n[0] + 296.0 * n[1] - 36.0 * n[2];
 }
 
-double infall_correction(const Attractor& attractor, double v_local_group, const Galactic& direction,
-                         const InfallOptions& options) {
-  const double cos_theta =
-      dot(unit_vector(attractor.centre.l, attractor.centre.b), unit_vector(direction.l, direction.b));
+double our_infall(const Attractor& attractor, const Galactic& direction, const InfallOptions& options) {
+  return options.strength * attractor.infall_at_us * cos_angle(attractor, direction);
+}
+
+double galaxy_infall(const Attractor& attractor, double v_local_group, const Galactic& direction,
+                     const InfallOptions& options) {
+  const double cos_theta = cos_angle(attractor, direction);
   const double v_a = attractor.velocity;
   const double along = v_local_group - v_a * cos_theta;
   const double r_squared = v_local_group * v_local_group + v_a * v_a - 2.0 * v_local_group * v_a * cos_theta;
   const double r = std::sqrt(std::max(0.0, r_squared));
-  const double ours = options.strength * attractor.infall_at_us;
-  // Within the region's radius: amplitude of its edge times r/edge, so that amplitude × along / r stays finite at the
-  // centre.
-  const double edge = v_a * std::sin(attractor.radius * degree);
-  const double r_held = std::max(r, edge);
-  const double amplitude_per_r = std::pow(r_held / v_a, 1.0 - options.slope) / r_held;
-  return ours * cos_theta + ours * along * amplitude_per_r;
+  // Within the region's radius: the amplitude at its edge times r/edge, so that amplitude × along / r stays finite.
+  const double r_held = std::max(r, v_a * std::sin(attractor.radius * degree));
+  const double amplitude_over_r = std::pow(r_held / v_a, 1.0 - options.slope) / r_held;
+  return options.strength * attractor.infall_at_us * along * amplitude_over_r;
 }
 
 InfallResult infall_flow(double z_helio, const Galactic& direction, const SunMotion& sun,
                          const InfallOptions& options) {
   const double v_helio = speed_of_light_km_s * z_helio;
+  const double z_cmb = z_cmb_from_helio(z_helio, direction, sun);
+  const Attractor* home = region_of(v_helio, direction, options.attractors);
   InfallResult result;
-  double correction = local_group_correction(direction);
-  double v_local_group = v_helio + correction;
-  double z_start = z_helio;
-  Galactic at = direction;
-  if (const Attractor* home = region_of(v_helio, direction, options.attractors)) {
-    result.inside = home->name;
-    if (options.region == AttractorRegion::at_centre) {
-      v_local_group = home->velocity;
-      z_start = v_local_group / speed_of_light_km_s;
-      correction = 0.0;
-      at = home->centre;
-    }
+  if (home != nullptr) result.inside = home->name;
+  if (options.scheme == InfallScheme::as_published) {
+    result.z_flow = published_z_flow(v_helio, direction, home, options);
+    result.v_pec = peculiar_velocity(z_cmb, result.z_flow);
+  } else {
+    const double v_local_group = v_helio + local_group_correction(direction);
+    for (const Attractor& a : options.attractors) result.v_pec -= galaxy_infall(a, v_local_group, direction, options);
+    result.z_flow = z_flow_from_cmb(z_cmb, result.v_pec);
   }
-  for (const Attractor& attractor : options.attractors) {
-    correction += infall_correction(attractor, v_local_group, at, options);
-  }
-  result.z_flow = (1.0 + z_start) * (1.0 + correction / speed_of_light_km_s) - 1.0;
-  result.v_flow = speed_of_light_km_s * result.z_flow;
-  result.v_pec = peculiar_velocity(z_cmb_from_helio(z_helio, direction, sun), result.z_flow);
   return result;
 }
 
