@@ -73,6 +73,8 @@ void FitsHandle::check(int status) const {
 int FitsHandle::hdus() const {
   int count = 0;
   int status = 0;
+  // A header that is being written has no end yet, and CFITSIO then counts no HDU at all.
+  if (is_new_) fits_flush_file(fits_, &status);
   fits_get_num_hdus(fits_, &count, &status);
   check(status);
   return count;
