@@ -21,8 +21,8 @@ void check(const Supernova& supernova) {
   };
   const double z = supernova.z_helio;
   if (!std::isfinite(z)) fail("z_helio", "no redshift", "give the heliocentric redshift");
-  if (z <= 0 || z > 2) {
-    fail("z_helio", fmt::format("redshift {} is not between 0 and 2", z), "give the heliocentric redshift");
+  if (z <= 0 || z > 3) {
+    fail("z_helio", fmt::format("redshift {} is not between 0 and 3", z), "give the heliocentric redshift");
   }
   if (!std::isfinite(supernova.mw_ebv) || supernova.mw_ebv < 0) {
     fail("mw_ebv", "no Milky Way reddening", "give E(B-V), or name a dust map in the run file");
