@@ -87,7 +87,7 @@ std::string summary_text(const SummaryTextOptions& options) {
   if (!answer.warnings.empty()) out += "\n";
   for (const std::string& warning : answer.warnings) wrap(harmless(warning), "  ! ", width, out);
   if (!run.summary.version.empty())
-    out += "\n" + harmless(run.summary.version) + ", " + harmless(options.folder.string()) + "\n";
+    out += fmt::format("\n{}, {}\n", harmless(run.summary.version), harmless(options.folder.string()));
   return out;
 }
 
