@@ -83,6 +83,7 @@ void refuse_crossed(const std::optional<double>& low, const std::optional<double
 
 std::vector<std::string> cut_names() {
   std::vector<std::string> names;
+  names.reserve(number_keys.size() + flag_keys.size());
   for (const NumberKey& key : number_keys) names.emplace_back(key.name);
   for (const FlagKey& key : flag_keys) names.emplace_back(key.name);
   return names;

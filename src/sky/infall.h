@@ -36,7 +36,7 @@ enum class InfallScheme {
   /// attractor's region is put
   /// at its centre. For supernovae this has two costs, which is why it is not the default: the part of our motion that
   /// the
-  /// attractors leave unexplained (320 km/s) becomes a dipole that never fades with distance, and a supernova
+  /// attractors leave unexplained (290 km/s) becomes a dipole that never fades with distance, and a supernova
   /// anywhere in Shapley's region (0.033 < z < 0.053) is moved to one distance, by up to 3600 km/s.
   as_published
 };

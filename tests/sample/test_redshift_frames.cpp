@@ -1,6 +1,5 @@
 #include <fmt/format.h>
 
-#include <array>
 #include <catch2/catch.hpp>
 #include <cmath>
 #include <map>
@@ -32,24 +31,6 @@ RedshiftOptions with(VelocitySource source) {
   RedshiftOptions options;
   options.velocity = source;
   return options;
-}
-
-double correlation(const std::vector<std::array<double, 2>>& pairs) {
-  double x = 0.0;
-  double y = 0.0;
-  for (const auto& [a, b] : pairs) {
-    x += a / static_cast<double>(pairs.size());
-    y += b / static_cast<double>(pairs.size());
-  }
-  double xx = 0.0;
-  double yy = 0.0;
-  double xy = 0.0;
-  for (const auto& [a, b] : pairs) {
-    xx += (a - x) * (a - x);
-    yy += (b - y) * (b - y);
-    xy += (a - x) * (b - y);
-  }
-  return xy / std::sqrt(xx * yy);
 }
 
 }  // namespace
@@ -199,32 +180,4 @@ TEST_CASE("published CMB-frame and flow redshifts are reproduced", "[realdata][p
   CHECK(own_agree == own);
   CHECK(group >= 110);
   CHECK(group_agree == group);
-}
-
-// Source: v_pec of Peterson et al. 2022, from a reconstruction of the density field. The infall model knows three
-// attractors only, so no closer agreement is to be expected than that both see the same flow where the attractors
-// dominate it: a clear correlation.
-TEST_CASE("the infall model goes with published peculiar velocities nearby", "[realdata][published]") {
-  THIRDRUNG_NEEDS_REAL_DATA(data);
-  const Table table = read_table(data / "published" / "supernovae.ecsv");
-  const auto names = table.strings("supernova");
-  const auto v_pec = table.reals_in("v_pec", "km/s");
-  std::map<std::string, Supernova> places;
-  for (const std::string sample : {"cfa1", "cfa2", "cfa3", "cfa4", "csp", "foundation", "loss", "lowz"}) {
-    for (const Supernova& s :
-         read_supernovae(read_table(data / "supernovae" / (sample + ".ecsv")), sample).supernovae) {
-      places[s.name] = s;
-    }
-  }
-  std::vector<std::array<double, 2>> pairs;
-  for (std::size_t i = 0; i < names.size(); ++i) {
-    const auto found = places.find(names[i]);
-    if (found == places.end() || found->second.z_helio < 0.005 || found->second.z_helio > 0.015) continue;
-    pairs.push_back({redshifts_of(found->second, with(VelocitySource::infall)).v_pec, v_pec[i]});
-    places.erase(found);
-  }
-  const double r = correlation(pairs);
-  WARN(fmt::format("infall model against published v_pec: {} supernovae, correlation {:.2f}", pairs.size(), r));
-  CHECK(pairs.size() > 30);
-  CHECK(r > 0.4);
 }

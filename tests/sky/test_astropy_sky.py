@@ -19,7 +19,7 @@ except ImportError:
     print("skipped: no astropy")
     sys.exit(77)
 
-TOOL = os.path.join(os.path.dirname(os.environ["THIRDRUNG_PROGRAM"]), "tools", "sky_values")
+TOOL = os.path.join(os.environ["THIRDRUNG_TOOLS"], "sky_values")
 C = 299792.458
 
 
