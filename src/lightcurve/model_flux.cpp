@@ -27,11 +27,12 @@ void model_flux(const ObservedBands& observed, const Selection& selection, const
   slopes.resize(n, 4);
   const double amplitude = std::exp(-constants::ln_flux_per_mag * at[1]);
   const double s = at[2];
+  const StretchColour where(s, at[3]);
   const double q_per_day = 1 / ((1 + observed.z) * s);
   for (Eigen::Index i = 0; i < n; ++i) {
     const Observation& observation = observed.observations[selection[static_cast<std::size_t>(i)]];
     const double q = (observation.time - at[0]) * q_per_day;
-    const BandFlux f = observed.bands[observation.band].table.at(q, s, at[3]);
+    const BandFlux f = observed.bands[observation.band].table.at(q, where);
     flux[i] = amplitude * f.flux;
     slopes(i, 0) = -amplitude * f.d_q * q_per_day;
     slopes(i, 1) = -constants::ln_flux_per_mag * flux[i];

@@ -1,6 +1,6 @@
 #pragma once
 
-#include <array>
+#include <Eigen/Core>
 #include <memory>
 #include <vector>
 
@@ -21,6 +21,19 @@ struct BandFlux {
 /// Direct integral over the band; the reference that the table is tested against.
 BandFlux integrate_band(const SpectralTemplate& model, const BandWeights& band, double q, double s, double c);
 
+/// A stretch and a colour, with their monomials: made once for all bands and phases of one evaluation.
+class StretchColour {
+ public:
+  StretchColour(double s, double c);
+
+ private:
+  friend class BandTable;
+  using Terms = Eigen::Array<double, 16, 1>;
+  Terms monomial_;  ///< u^a v^b by total degree, and a zero, see BandTable.
+  Terms by_s_;
+  Terms by_c_;
+};
+
 /// Log flux in one band against q = p/s, expanded in stretch and colour.
 ///
 /// ln f(q; s, c) is a cubic spline in q whose values are polynomials of total degree 4 in u = s − 1 and v = c − 0.2,
@@ -36,7 +49,8 @@ class BandTable {
   /// A single table without a grid at hand, for phases [q_min, q_max]; slower by far.
   BandTable(const SpectralTemplate& model, const BandWeights& band, double q_min, double q_max);
 
-  BandFlux at(double q, double s, double c) const;
+  BandFlux at(double q, const StretchColour& where) const;
+  BandFlux at(double q, double s, double c) const { return at(q, StretchColour(s, c)); }
   /// ln flux at every node, for scans that can do with straight lines between the nodes.
   std::vector<double> log_flux_at_nodes(double s, double c) const;
   const PhaseNodes& nodes() const { return *nodes_; }

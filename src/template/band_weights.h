@@ -22,6 +22,6 @@ struct BandWeights {
 };
 
 /// @param z heliocentric redshift. @param ebv Milky Way E(B−V) [mag]. @param step rest-frame grid [angstrom].
-BandWeights band_weights(const Passband& passband, double z, const Extinction& dust, double ebv, double step = 20.0);
+BandWeights band_weights(const Passband& passband, double z, const Extinction& dust, double ebv, double step = 25.0);
 
 }  // namespace thirdrung

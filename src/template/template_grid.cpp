@@ -10,14 +10,12 @@ namespace thirdrung {
 
 namespace {
 
-/// The breakpoints of both phase bases inside the range, its ends, and equal parts of every gap wider than `widest`.
+/// The breakpoints of Φ inside the range, its ends, and equal parts of every gap wider than `widest`.
 /// The first and last gaps are always halved: "not-a-knot" ends then reproduce a cubic there.
 std::vector<double> phase_nodes(const SpectralTemplate& model, double q_min, double q_max, double widest) {
   std::vector<double> stops = {q_min, q_max};
-  for (const CubicBasis* basis : {&model.phase_basis, &model.stretch_phase_basis}) {
-    for (const double b : basis->breakpoints()) {
-      if (b > q_min && b < q_max) stops.push_back(b);
-    }
+  for (const double b : model.phase_basis.breakpoints()) {
+    if (b > q_min && b < q_max) stops.push_back(b);
   }
   std::sort(stops.begin(), stops.end());
   constexpr double same = 1e-6;
@@ -75,7 +73,8 @@ TemplateGrid::TemplateGrid(SpectralTemplate model, const TemplateGridOptions& op
   const auto gamma_basis = basis_at(model_.stretch_wavelength_basis, wavelength);
   const auto rows = static_cast<Eigen::Index>(nodes_->size());
   const auto columns = static_cast<Eigen::Index>(wavelength.size());
-  for (auto& matrix : flux_times_gamma_) matrix.resize(rows, columns);
+  const Eigen::Index filled_rows = (rows + row_block - 1) / row_block * row_block;
+  for (auto& matrix : flux_times_gamma_) matrix.setZero(filled_rows, columns);
   for (Eigen::Index n = 0; n < rows; ++n) {
     const double q = nodes_->phases()[static_cast<std::size_t>(n)];
     const Eigen::VectorXd gamma = along(model_.gamma_slice(q), gamma_basis);

@@ -14,8 +14,8 @@ namespace thirdrung {
 struct TemplateGridOptions {
   double phase_min = -20;         ///< In q = p/s [d]; cut to the template's own phases.
   double phase_max = 60;          ///< [d]
-  double phase_step = 2.0;        ///< Widest gap between nodes [d]; the template's breakpoints are nodes too.
-  double wavelength_step = 20.0;  ///< [angstrom]; must be that of the BandWeights it is used with.
+  double phase_step = 2.5;        ///< Widest gap between nodes [d]; the breakpoints of Φ are nodes too.
+  double wavelength_step = 25.0;  ///< [angstrom]; must be that of the BandWeights it is used with.
 };
 
 /// One template at fixed phases and rest-frame wavelengths: e^Φ Γ^a for a = 0..4, and powers of k = −0.921 K.
@@ -25,6 +25,7 @@ struct TemplateGridOptions {
 class TemplateGrid {
  public:
   static constexpr int orders = 5;  ///< Powers 0..4 of Γ and of K.
+  static constexpr Eigen::Index row_block = 4;
   /// Colour about which band tables are expanded [mag], amid those that occur.
   static constexpr double centre_colour = 0.2;
 
@@ -37,7 +38,7 @@ class TemplateGrid {
   /// Column of a wavelength that is a multiple of the step; the first or last column outside the grid, where the
   /// template is constant.
   Eigen::Index column(long multiple) const;
-  /// e^Φ Γ^power, nodes × wavelengths.
+  /// e^Φ Γ^power, nodes × wavelengths; the rows are filled up with zeros to a multiple of row_block.
   const Eigen::MatrixXd& flux_times_gamma(int power) const {
     return flux_times_gamma_[static_cast<std::size_t>(power)];
   }
