@@ -24,7 +24,7 @@ struct Chart {
   std::string id;
   std::string title;
   std::string caption;
-  std::string size = "half";  ///< "full", "half", "third": the share of the page's width.
+  std::string size = "half";  ///< "full", "two-thirds", "half", "third": the share of the page's width.
   int height = 300;           ///< Pixels.
   nlohmann::json spec;
   /// {"fields": [...]} of the supernova table, or {"header": [...], "rows": [[...]]}.

@@ -105,7 +105,7 @@ Chart budget_chart(const ChartInput& input) {
           "Error budget",
           "Amber: statistical; blue: systematic. Right: error of a_B, and of H0 in percent. Sources add in squares, "
           "but for their correlations.",
-          "full",
+          "half",
           height,
           bar_spec(input, std::move(bars), "error of a_B"),
           {{"header", {"source", "kind", "size", "ab_contribution", "mag_contribution", "h0_percent"}}, {"rows", csv}},
@@ -129,7 +129,7 @@ Chart derivative_chart(const ChartInput& input) {
   return {"derivatives",
           "Lever of each calibration input",
           "Change of a_B for a unit change of one input, all else left as it is.",
-          "full",
+          "half",
           height,
           bar_spec(input, std::move(bars), "da_B per unit"),
           {{"header", {"input", "unit", "d_ab"}}, {"rows", csv}},
@@ -146,8 +146,19 @@ json name_marks(const ChartInput& input) {
     return std::abs(input.all.rows[a].influence) > std::abs(input.all.rows[b].influence);
   });
   json rows = json::array();
-  for (std::size_t k = 0; k < std::min<std::size_t>(6, order.size()); ++k) {
-    const SupernovaRow& row = input.all.rows[order[k]];
+  // Names that would run into each other are left to the hover.
+  const Range across = range_of(used_values(input.all, &SupernovaRow::z_flow)),
+              up = range_of(used_values(input.all, &SupernovaRow::influence));
+  std::vector<const SupernovaRow*> named;
+  for (const std::size_t i : order) {
+    const SupernovaRow& row = input.all.rows[i];
+    const bool free = std::none_of(named.begin(), named.end(), [&](const SupernovaRow* other) {
+      return std::abs(other->z_flow - row.z_flow) < 0.14 * (across.high - across.low) &&
+             std::abs(other->influence - row.influence) < 0.08 * (up.high - up.low);
+    });
+    if (!free) continue;
+    if (named.size() == 6) break;
+    named.push_back(&row);
     rows.push_back({{"x", row.z_flow}, {"y", row.influence}, {"text", row.name}});
   }
   return rows;
@@ -197,7 +208,7 @@ ChartSection influence_section(const ChartInput& input) {
   add_rows(spec, "names", name_marks(input));
   section.charts.push_back({"influence",
                             "Δa_B without one supernova",
-                            "Errors are those of the difference. The six that pull most are named.",
+                            "Errors are those of the difference. Some that pull most are named.",
                             "full",
                             320,
                             spec,

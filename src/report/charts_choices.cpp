@@ -92,7 +92,7 @@ Chart grid_chart(const ChartInput& input) {
   return {"zrange-grid",
           "Redshift range",
           "Δa_B against the reference range and the error of that difference, both in thousandths.",
-          "half",
+          highs.size() <= 6 ? "third" : "full",
           height,
           spec,
           {{"header", {"z_min", "z_max", "supernovae", "delta_ab", "delta_ab_error"}}, {"rows", csv}},
@@ -217,7 +217,7 @@ Chart scan_chart(const ChartInput& input) {
           "Other choices",
           "Each row changes one choice; right: Δa_B and the number of supernovae. Diamonds are more than twice the "
           "error of the difference from zero; open symbols carry a caution (hover).",
-          "full",
+          input.run.zrange_grid ? "two-thirds" : "full",
           90 + 19 * static_cast<int>(order.size()),
           spec,
           {{"header", {"scan", "setting", "supernovae", "delta_ab", "delta_ab_error", "caution"}}, {"rows", csv}},

@@ -91,7 +91,7 @@ Chart survey_chart(const ChartInput& input, const Range& vertical) {
        {"orient", "left"},
        {"title", residual_title},
        {"grid", true},
-       {"format", "+.1f"},
+       {"format", ".1f"},
        {"minExtent", 34},
        {"tickCount", {{"signal", "ceil(height / 45)"}}}}};
   // A golden-section sequence spreads the points evenly without chance; the mean stands to the right of them.

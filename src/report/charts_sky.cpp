@@ -114,8 +114,8 @@ Chart residual_sky_chart(const ChartInput& input) {
           "Position on the sky",
           "Equal-area map (Hammer), right ascension 180° in the middle, east to the left; dashed: plane of the Galaxy. "
           "Larger symbols: farther from zero in units of their error.",
-          "full",
-          380,
+          "two-thirds",
+          300,
           spec,
           {{"fields", {"name", "survey_name", "ra", "dec", "r", "re"}}},
           ""};
@@ -144,18 +144,18 @@ ChartSection velocity_section(const ChartInput& input) {
   add_rows(spec, "field", rows);
   spec["scales"].push_back(diverging_scale(largest));
   spec["legends"] = {tone_legend("peculiar velocity (km/s): left towards us, right away")};
-  // Squares that together cover the map: its area is 4π in units of the radius squared.
+  // Discs that together cover most of the map: its area is 4π in units of the radius squared.
   const double cell = 4 * 3.14159265 / static_cast<double>(std::max<std::size_t>(1, rows.size()));
-  json squares = {{"type", "symbol"},
-                  {"from", {{"data", "field"}}},
-                  {"encode",
-                   {{"update",
-                     {{"x", {{"scale", "x"}, {"field", "x"}}},
-                      {"y", {{"scale", "y"}, {"field", "y"}}},
-                      {"shape", {{"value", "square"}}},
-                      {"size", {{"signal", fmt::format("{} * radius * radius * 0.8", cell)}}},
-                      {"fill", {{"scale", "tone"}, {"field", "v"}}}}}}}};
-  spec["marks"].insert(spec["marks"].begin(), squares);
+  json discs = {{"type", "symbol"},
+                {"from", {{"data", "field"}}},
+                {"encode",
+                 {{"update",
+                   {{"x", {{"scale", "x"}, {"field", "x"}}},
+                    {"y", {{"scale", "y"}, {"field", "y"}}},
+                    {"shape", {{"value", "circle"}}},
+                    {"size", {{"signal", fmt::format("{} * radius * radius * 0.6", cell)}}},
+                    {"fill", {{"scale", "tone"}, {"field", "v"}}}}}}}};
+  spec["marks"].insert(spec["marks"].begin(), discs);
   if (std::any_of(input.all.rows.begin(), input.all.rows.end(),
                   [](const SupernovaRow& row) { return row.used && std::isfinite(row.ra); })) {
     show_supernovae(spec, "datum.used && isValid(datum.mx)");

@@ -52,6 +52,12 @@ json relation_rows(const Correction& correction, double value, const Range& rang
   return rows;
 }
 
+/// "Slope ..." in the middle of a sentence.
+std::string lower_case_slope(std::string text) {
+  if (!text.empty()) text.front() = 's';
+  return text;
+}
+
 Chart relation_chart(const ChartInput& input, const Correction& correction) {
   const Measured parameter = input.run.summary.parameter(correction.parameter);
   const auto x = used_values(input.all, correction.member), xe = used_values(input.all, correction.error_member);
@@ -80,15 +86,16 @@ Chart relation_chart(const ChartInput& input, const Correction& correction) {
   show_supernovae(spec, fmt::format("datum.used && isValid(datum.r) && isValid(datum.{})", correction.field));
   add_rows(spec, "relation", relation_rows(correction, parameter.value, across));
   add_rows(spec, "means", mean_rows(x, r, re, 6, correction.axis));
-  return {correction.id,
-          correction.title,
-          fmt::format("{} = {}. With the correction: {}", correction.symbol,
-                      with_error(parameter.value, parameter.error), slope_text(x, r, re, correction.per)),
-          "third",
-          430,
-          spec,
-          {{"fields", {"name", "survey_name", correction.field, correction.error, correction.without, "r", "re"}}},
-          ""};
+  return {
+      correction.id,
+      correction.title,
+      fmt::format("{} = {}. With the correction: {}", correction.symbol, with_error(parameter.value, parameter.error),
+                  lower_case_slope(slope_text(x, r, re, correction.per))),
+      "third",
+      430,
+      spec,
+      {{"fields", {"name", "survey_name", correction.field, correction.error, correction.without, "r", "re"}}},
+      ""};
 }
 
 }  // namespace

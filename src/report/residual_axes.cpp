@@ -47,7 +47,7 @@ Direction redshift_axis(const SupernovaRows& all) {
 }
 
 Direction residual_axis(const Range& range) {
-  return {residual_title, range, false, true, nullptr, "+.1f"};
+  return {residual_title, range, false, true, nullptr, ".1f"};
 }
 
 }  // namespace thirdrung

@@ -53,13 +53,16 @@ std::size_t used_count(const SupernovaRows& all) {
 json bare_spec(const ChartInput& input) {
   json surveys = json::array();
   for (std::size_t i = 0; i < input.all.surveys.size(); ++i) surveys.push_back(i);
-  json colours = json::array(), shapes = json::array();
+  json colours = json::array(), shapes = json::array(), sizes = json::array();
+  // Vega gives the area of the square around a symbol; these factors make the ink alike.
+  const double shape_sizes[] = {1, 0.85, 1.9, 1.5, 1.5, 1.9, 1.9, 1.9};
   const char* const shape_names[] = {"circle", "square",        "triangle-up",    "diamond",
                                      "cross",  "triangle-down", "triangle-right", "triangle-left"};
   for (std::size_t i = 0; i < std::max<std::size_t>(1, input.all.surveys.size()); ++i) {
     // More than eight colours cannot be told apart; the rest share a grey.
     colours.push_back(i < 8 ? fmt::format("@c{}", i) : "@other");
     shapes.push_back(i < 8 ? shape_names[i] : "circle");
+    sizes.push_back(i < 8 ? shape_sizes[i] : 1);
   }
   return {{"width", 600},
           {"height", 300},
@@ -69,7 +72,8 @@ json bare_spec(const ChartInput& input) {
           {"data", {{{"name", "sn"}}}},
           {"scales",
            {{{"name", "survey"}, {"type", "ordinal"}, {"domain", surveys}, {"range", colours}},
-            {{"name", "shape"}, {"type", "ordinal"}, {"domain", surveys}, {"range", shapes}}}},
+            {{"name", "shape"}, {"type", "ordinal"}, {"domain", surveys}, {"range", shapes}},
+            {{"name", "shape_size"}, {"type", "ordinal"}, {"domain", surveys}, {"range", sizes}}}},
           {"axes", json::array()},
           {"marks", json::array()}};
 }
@@ -137,7 +141,7 @@ json supernova_points(const ChartInput& input, const std::string& x, const std::
         {"update",
          {{"x", place("x", x)},
           {"y", place("y", y)},
-          {"size", {{"value", size}}},
+          {"size", {{"scale", "shape_size"}, {"field", "survey"}, {"mult", size}}},
           {"stroke", {{"signal", "picked && mask[datum.i] ? '@ink' : '@paper'"}}},
           {"strokeWidth", {{"value", 0.7}}},
           {"opacity", {{"signal", fmt::format("picked && !mask[datum.i] ? 0.13 : {}", opacity)}}}}}}}};

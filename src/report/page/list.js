@@ -3,6 +3,7 @@
 const listColumns = [
   {key: 'name', title: 'supernova', text: (sn) => sn.name},
   {key: 'survey_name', title: 'survey', text: (sn) => sn.survey_name},
+  {key: 'flags', title: 'flags, why left out', text: flagText},
   {key: 'z', title: 'z', text: (sn) => fixed(sn.z, 4), number: true},
   {key: 'm', title: 'm_B (mag)', text: (sn) => withError(sn.m, sn.me), number: true},
   {key: 's', title: 's', text: (sn) => withError(sn.s, sn.se), number: true},
@@ -13,7 +14,6 @@ const listColumns = [
   {key: 'm0', title: 'standard m_B', text: (sn) => withError(sn.m0, sn.m0e), number: true},
   {key: 'r', title: 'residual (mag)', text: (sn) => withError(sn.r, sn.re, true), number: true},
   {key: 'infl', title: '10³ Δa_B', text: (sn) => known(sn.infl) ? signed(1000 * sn.infl, 2) : '–', number: true},
-  {key: 'flags', title: 'flags, and why it was left out', text: flagText},
 ];
 
 function flagText(sn) {
