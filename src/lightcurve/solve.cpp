@@ -10,7 +10,7 @@ namespace thirdrung {
 
 namespace {
 
-constexpr int most_iterations = 40;
+constexpr int most_iterations = 60;
 constexpr double settled = 1e-4;  // Of an error.
 
 /// One bounded parameter as a function of a free one.
@@ -125,6 +125,12 @@ double move_in_errors(const Parameters& from, const Parameters& to, const Eigen:
   return largest;
 }
 
+/// Part of a step to be taken: where the template fits badly, C and the answer may take turns for ever otherwise.
+double relaxation(int iteration) {
+  if (iteration <= 8) return 1.0;
+  return iteration <= 20 ? 0.5 : 0.25;
+}
+
 /// Wide priors where the data alone cannot determine a parameter.
 void hold_undetermined(const Problem& problem, Solution& solution) {
   solution.s_prior = problem.options.s_prior;
@@ -169,7 +175,8 @@ Solution solve(const Problem& problem, const Parameters& start, Selection select
     Eigen::Vector4d y = residuals.free(out.at);
     solver.Solve(residuals, &y);
     const Parameters before = out.at;
-    out.at = residuals.bounded(y.data());
+    const Parameters proposed = residuals.bounded(y.data());
+    out.at = before + relaxation(out.iterations) * (proposed - before);
     model_flux(problem.observed, out.selection, out.at, out.flux, slopes);
     if (options.robust) {
       out.weights = cauchy_weights(noise.own_pulls(residuals.data() - out.flux), options.robust_scale);
@@ -177,7 +184,7 @@ Solution solve(const Problem& problem, const Parameters& start, Selection select
     noise =
         Noise(problem.observed, out.selection, problem.model, out.at, out.flux, out.weights, options.template_scatter);
     out.covariance = covariance_of(out, noise, slopes);
-    out.converged = move_in_errors(before, out.at, out.covariance) < settled;
+    out.converged = move_in_errors(before, proposed, out.covariance) < settled;
   }
   Eigen::VectorXd r = residuals.data() - out.flux;
   noise.whiten(r);
