@@ -11,6 +11,10 @@ namespace thirdrung {
 
 namespace {
 
+bool is_control(char c) {
+  return static_cast<unsigned char>(c) < 0x20 || c == 0x7F;
+}
+
 /// std::from_chars knows no leading '+'.
 std::string_view without_plus(std::string_view text) {
   if (text.size() > 1 && text[0] == '+' && text[1] != '-' && text[1] != '+') text.remove_prefix(1);
@@ -62,6 +66,10 @@ std::string_view trimmed(std::string_view text) {
   return text.substr(first, text.find_last_not_of(blanks) - first + 1);
 }
 
+bool has_control_character(std::string_view text) {
+  return std::any_of(text.begin(), text.end(), is_control);
+}
+
 std::string quoted_for_message(std::string_view text) {
   constexpr std::size_t longest = 40;
   std::string shown(text);
@@ -72,8 +80,7 @@ std::string quoted_for_message(std::string_view text) {
     shown.resize(cut);
     shown += "...";
   }
-  std::replace_if(
-      shown.begin(), shown.end(), [](char c) { return c == '\n' || c == '\r' || c == '\t' || c == '\0'; }, ' ');
+  std::replace_if(shown.begin(), shown.end(), is_control, ' ');
   return "\"" + shown + "\"";
 }
 

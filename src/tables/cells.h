@@ -24,7 +24,10 @@ std::string format_real(double value);
 /// `text` without blanks at its ends.
 std::string_view trimmed(std::string_view text);
 
-/// `text` shortened for an error message, with line breaks shown as blanks.
+/// True if the text holds a line break, a tab or another control character: no name should.
+bool has_control_character(std::string_view text);
+
+/// `text` shortened for an error message, with line breaks and other control characters shown as blanks.
 std::string quoted_for_message(std::string_view text);
 
 }  // namespace thirdrung

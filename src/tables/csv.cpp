@@ -75,6 +75,11 @@ std::vector<std::string> column_names(const std::vector<Field>& fields, const st
       throw InputError({file, {}, {}}, fmt::format("column {} has no name", names.size() + 1),
                        "name every column in the first line");
     }
+    if (has_control_character(name)) {
+      throw InputError({file, {}, {}},
+                       fmt::format("the name of column {} holds a line break or a control character", names.size() + 1),
+                       "give it a name on one line");
+    }
     if (parse_real(name) && name != "nan" && name != "inf") {
       throw InputError({file, {}, {}}, fmt::format("the first line names no columns (it holds the number {})", name),
                        "put a line of column names before the rows");
@@ -110,27 +115,29 @@ std::optional<bool> parse_word_flag(const std::string& text) {
   return text == "1" || text == "0" ? std::nullopt : parse_flag(text);
 }
 
-Column typed(std::string name, std::vector<std::string> texts) {
+/// The values in the narrowest type that holds every one of them.
+auto typed_values(const std::string& name, std::vector<std::string> texts) -> decltype(Column::values) {
+  if (std::find(kTextColumns.begin(), kTextColumns.end(), name) != kTextColumns.end()) return texts;
+  const bool has_values =
+      std::any_of(texts.begin(), texts.end(), [](const std::string& text) { return !text.empty(); });
+  if (has_values) {
+    if (auto integers = parsed<Column::Integers>(texts, 0, parse_integer)) return *std::move(integers);
+  }
+  constexpr double nan = std::numeric_limits<double>::quiet_NaN();
+  if (auto reals = parsed<Column::Reals>(texts, nan, parse_real)) return *std::move(reals);
+  if (auto flags = parsed<Column::Flags>(texts, false, parse_word_flag)) return *std::move(flags);
+  return texts;
+}
+
+Column column_of(std::string name, std::vector<std::string> texts) {
   Column column;
   column.unit = csv_default_unit(name);
-  column.name = std::move(name);
   if (std::find(texts.begin(), texts.end(), "") != texts.end()) {
+    column.missing.reserve(texts.size());
     for (const std::string& text : texts) column.missing.push_back(text.empty());
   }
-  const bool all_missing =
-      std::all_of(texts.begin(), texts.end(), [](const std::string& text) { return text.empty(); });
-  constexpr double nan = std::numeric_limits<double>::quiet_NaN();
-  if (std::find(kTextColumns.begin(), kTextColumns.end(), column.name) != kTextColumns.end()) {
-    column.values = std::move(texts);
-  } else if (auto integers = parsed<Column::Integers>(texts, 0, parse_integer); integers && !all_missing) {
-    column.values = *std::move(integers);
-  } else if (auto reals = parsed<Column::Reals>(texts, nan, parse_real)) {
-    column.values = *std::move(reals);
-  } else if (auto flags = parsed<Column::Flags>(texts, false, parse_word_flag)) {
-    column.values = *std::move(flags);
-  } else {
-    column.values = std::move(texts);
-  }
+  column.values = typed_values(name, std::move(texts));
+  column.name = std::move(name);
   return column;
 }
 
@@ -168,7 +175,7 @@ Table parse_csv(std::string_view text, const std::string& file) {
     for (std::size_t i = 0; i < names.size(); ++i) texts[i].emplace_back(fields[i].text);
   }
   Table table(file);
-  for (std::size_t i = 0; i < names.size(); ++i) table.add(typed(std::move(names[i]), std::move(texts[i])));
+  for (std::size_t i = 0; i < names.size(); ++i) table.add(column_of(std::move(names[i]), std::move(texts[i])));
   return table;
 }
 

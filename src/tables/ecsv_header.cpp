@@ -85,6 +85,10 @@ EcsvColumn column_of(const YAML::Node& node, const std::string& file, std::size_
          "give it as {name: ..., datatype: ...}");
   }
   column.name = node["name"].Scalar();
+  if (column.name.empty() || has_control_character(column.name)) {
+    fail(file, fmt::format("the name in entry {} of \"datatype\" is empty or holds a line break", number),
+         "give it a name on one line");
+  }
   column.datatype = scalar(node["datatype"]);
   column.unit = unit_of(node["unit"]);
   column.description = scalar(node["description"]);

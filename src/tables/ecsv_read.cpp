@@ -113,10 +113,11 @@ void check_names(const std::vector<Field>& names, const EcsvHeader& header, cons
   bool same = names.size() == header.columns.size();
   for (std::size_t i = 0; same && i < names.size(); ++i) same = names[i].text == header.columns[i].name;
   if (same) return;
-  std::vector<std::string_view> found;
-  for (const Field& name : names) found.push_back(name.text);
-  std::vector<std::string_view> declared;
-  for (const EcsvColumn& column : header.columns) declared.push_back(column.name);
+  std::vector<std::string_view> found(names.size());
+  std::transform(names.begin(), names.end(), found.begin(), [](const Field& name) { return name.text; });
+  std::vector<std::string_view> declared(header.columns.size());
+  std::transform(header.columns.begin(), header.columns.end(), declared.begin(),
+                 [](const EcsvColumn& column) { return std::string_view(column.name); });
   throw InputError({file, {}, {}},
                    fmt::format("the line of column names ({}) differs from the header's \"datatype\" ({})",
                                fmt::join(found, ", "), fmt::join(declared, ", ")),

@@ -116,13 +116,13 @@ void FitsHandle::verify() const {
                        "fetch or write it again; it was damaged or changed since");
     }
   }
-  // Bytes behind the last HDU that CFITSIO can read begin another one that it cannot.
+  // Bytes behind the last HDU that CFITSIO can read, other than padding, are one that it cannot.
   LONGLONG end = 0;
   int status = 0;
   fits_get_hduaddrll(fits_, nullptr, nullptr, &end, &status);
   check(status);
   const std::string_view rest = std::string_view(content_).substr(static_cast<std::size_t>(end));
-  if (rest.starts_with("XTENSION")) {
+  if (rest.find_first_not_of('\0') != std::string_view::npos) {
     throw InputError({file_, {}, {}}, fmt::format("part {} is cut short or damaged", count + 1),
                      "fetch or write it again");
   }

@@ -113,8 +113,8 @@ void append_fits_table(const FitsHandle& fits, const Table& table, const std::st
     units.push_back(ascii_escaped(fits_spelling(column.unit)));
   }
   const auto pointers = [](std::vector<std::string>& texts) {
-    std::vector<char*> result;
-    for (std::string& text : texts) result.push_back(text.data());
+    std::vector<char*> result(texts.size());
+    std::transform(texts.begin(), texts.end(), result.begin(), [](std::string& text) { return text.data(); });
     return result;
   };
   int status = 0;

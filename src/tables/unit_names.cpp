@@ -80,6 +80,7 @@ constexpr NamedUnit kUnits[] = {
     {"arcmin", kDegree / 60, 0, kAngle, false},
     {"arcsec", kDegree / 3600, 0, kAngle, true},
     {"mas", kDegree / 3600, -3, kAngle, false},
+    {"uas", kDegree / 3600, -6, kAngle, false},
     {"Hz", 1, 0, powers({{Axis::time, -1}}), true},
     {"g", 1, -3, kMass, true},
     {"solMass", 1.988409870698051, 30, kMass, false},

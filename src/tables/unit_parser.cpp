@@ -180,7 +180,7 @@ class UnitParser {
     if (peek() == '-' || peek() == '+') ++end;
     while (is_digit(peek(end - at_))) ++end;
     const auto value = parse_integer(text_.substr(at_, end - at_));
-    if (!value || std::abs(*value) > 20) {
+    if (!value || std::abs(*value) > 300) {
       if (marked) throw UnitFault{"has a malformed power"};
       at_ = start;
       return 1;

@@ -304,6 +304,36 @@ class Csv(Against):
         self.assertEqual([str(third[name].unit) for name in ("mjd", "flux")], ["d", "uJy"])
         self.assertEqual(third["supernova"].tolist(), table["supernova"].tolist())
 
+    def test_units_against_astropy(self):
+        """Plain CSV is written in the unit that a column's name stands for: a way to see a conversion from outside.
+
+        Tolerance: 4 units in the last place, for astropy's own chain of factors.
+        """
+        kinds = {"flux": "nJy uJy mJy Jy kJy MJy erg/(s.cm2.Hz) W/(m2.Hz) 1e-3*Jy 10**-29*erg/(s.cm2.Hz)",
+                 "wavelength": "Angstrom nm um micron m mm cm km pm pc AU",
+                 "mjd": "d day s min h yr ms ks us",
+                 "ra": "deg rad arcmin arcsec mas hourangle mrad uas",
+                 "mag": "mag mmag",
+                 "v_pec": "km/s m/s cm/s km/h AU/yr pc/yr Angstrom/s km.s-1 kpc/Gyr"}
+        defaults = {"flux": "uJy", "wavelength": "Angstrom", "mjd": "d", "ra": "deg", "mag": "mag", "v_pec": "km/s"}
+        for name, spellings in kinds.items():
+            for spelling in spellings.split():
+                unit = units.Unit(spelling)
+                written = {spelling, unit.to_string()}
+                for style in ("fits", "vounit"):
+                    try:
+                        written.add(unit.to_string(style))
+                    except ValueError:
+                        pass
+                for text in sorted(written):
+                    with self.subTest(name=name, unit=text):
+                        (self.at / "u.ecsv").write_text(
+                            f"# %ECSV 1.0\n# ---\n# datatype:\n# - {{name: {name}, unit: '{text}', datatype: float64}}\n{name}\n1.5\n")
+                        convert(self.at / "u.ecsv", self.at / "u.csv")
+                        got = float((self.at / "u.csv").read_text().split()[1])
+                        want = (1.5 * unit).to_value(defaults[name])
+                        self.assertLessEqual(abs(got / want - 1), 1e-15)
+
 
 if __name__ == "__main__":
     unittest.main()

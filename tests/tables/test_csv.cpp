@@ -56,3 +56,11 @@ TEST_CASE("plain CSV is written in the units that its names stand for") {
   table.add({"mag", "mag", "", Column::Reals{0.1, 0}, {false, true}});
   CHECK(format_csv(table) == "supernova,flux,mag\n\"a,b\",1500.0,0.1\nc,2500.0,\n");
 }
+
+TEST_CASE("an error stays one line whatever the file holds") {
+  CHECK(fault("a,\"b\nc\"\n1,2\n") ==
+        "t.csv: the name of column 2 holds a line break or a control character; give it a name on one line.");
+  const Table table = parse_csv("a,mjd\n1,\"two\nlines\"\n", "t.csv");
+  CHECK(message_of<InputError>([&] { table.reals("mjd"); }) ==
+        "t.csv, row 1, column mjd: \"two lines\" is not a number; give a number, or leave the field empty.");
+}
