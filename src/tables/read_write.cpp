@@ -2,6 +2,7 @@
 
 #include <fmt/format.h>
 
+#include <fstream>
 #include <string>
 #include <string_view>
 
@@ -32,6 +33,15 @@ Kind kind_by_name(const std::filesystem::path& path) {
   return Kind::unknown;
 }
 
+/// First bytes of the file; none if it cannot be read, which reading it whole then says.
+std::string front_of(const std::filesystem::path& path) {
+  std::string front(16, '\0');
+  std::ifstream in(path, std::ios::binary);
+  in.read(front.data(), static_cast<std::streamsize>(front.size()));
+  front.resize(static_cast<std::size_t>(in.gcount()));
+  return front;
+}
+
 /// The mark that some editors put before UTF-8 text.
 std::string_view without_byte_order_mark(std::string_view text) {
   constexpr std::string_view mark = "\xEF\xBB\xBF";
@@ -43,12 +53,14 @@ std::string_view without_byte_order_mark(std::string_view text) {
 Table read_table(const std::filesystem::path& path) {
   const std::string file = path.string();
   const Kind kind = kind_by_name(path);
-  std::string content = read_file(path);
-  if (content.empty()) throw InputError({file, {}, {}}, "is empty", "give a table");
-  if (kind == Kind::fits || kind == Kind::fits_gz || looks_like_fits(content) || looks_like_gzip(content)) {
+  const std::string front = front_of(path);
+  if (kind == Kind::fits || kind == Kind::fits_gz || looks_like_fits(front) || looks_like_gzip(front)) {
+    std::string content = read_file(path);
+    if (content.empty()) throw InputError({file, {}, {}}, "is empty", "give a table");
     return parse_fits_table(std::move(content), file);
   }
-  content = read_text_file(path);
+  const std::string content = read_text_file(path);
+  if (content.empty()) throw InputError({file, {}, {}}, "is empty", "give a table");
   const std::string_view text = without_byte_order_mark(content);
   if (kind == Kind::ecsv || looks_like_ecsv(text)) return parse_ecsv(text, file);
   if (kind == Kind::csv) return parse_csv(text, file);
