@@ -56,7 +56,7 @@ double PlotArea::y(double value) const {
 void PlotArea::frame(Drawing& drawing, bool with_x, bool with_y) const {
   const double small = 7, title = 8, tick = 3;
   drawing.rectangle(x_, y_, width_, height_, ink, false);
-  const auto across = ticks_of(across_, std::max(2, static_cast<int>(width_ / 42)));
+  const auto across = ticks_of(across_, std::max(2, static_cast<int>(width_ / 34)));
   double last_label = -1e9;
   for (const double value : across) {
     const double place = x(value);
@@ -66,7 +66,7 @@ void PlotArea::frame(Drawing& drawing, bool with_x, bool with_y) const {
     last_label = place;
     drawing.text(place, y_ + height_ + 9, label_of(value, across, across_.logarithmic), small, Align::centre);
   }
-  const auto up = ticks_of(up_, std::max(2, static_cast<int>(height_ / 24)));
+  const auto up = ticks_of(up_, std::max(2, static_cast<int>(height_ / 19)));
   double widest = 0;
   for (const double value : up) {
     const double place = y(value);

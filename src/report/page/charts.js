@@ -128,7 +128,7 @@ function watchCharts() {
     for (const {target, isIntersecting} of seen) {
       const entry = charts.find((c) => c.plot === target);
       entry.visible = isIntersecting;
-      if (isIntersecting) ensureDrawn(entry);
+      if (isIntersecting) ensureDrawn(entry).then(() => placeRing(entry));
     }
   }, {rootMargin: '500px'});
   const sized = new ResizeObserver((changes) => {
