@@ -1,0 +1,79 @@
+#include "training/training_set.h"
+
+#include <algorithm>
+#include <cmath>
+#include <map>
+
+namespace thirdrung {
+
+namespace {
+
+struct Range {
+  int first = 0, count = 0;
+};
+
+Range range_of(const std::vector<CubicBasis::Weights>& weights) {
+  const int first = weights.front().first;
+  return {first, weights.back().first + 4 - first};
+}
+
+std::vector<CubicBasis::Weights> basis_at(const CubicBasis& basis, const std::vector<double>& wavelength) {
+  std::vector<CubicBasis::Weights> out;
+  for (const double lambda : wavelength) out.push_back(basis.at(lambda));
+  return out;
+}
+
+TrainingBand prepare_band(const std::string& id, BandWeights weights, const SpectralTemplate& bases) {
+  TrainingBand band;
+  band.passband = id;
+  band.weights = std::move(weights);
+  band.phi = basis_at(bases.wavelength_basis, band.weights.wavelength);
+  band.gamma = basis_at(bases.stretch_wavelength_basis, band.weights.wavelength);
+  band.colour = basis_at(bases.colour_basis, band.weights.wavelength);
+  const Range phi = range_of(band.phi);
+  const Range gamma = range_of(band.gamma);
+  const Range colour = range_of(band.colour);
+  band.phi_first = phi.first;
+  band.phi_count = phi.count;
+  band.gamma_first = gamma.first;
+  band.gamma_count = gamma.count;
+  band.colour_first = colour.first;
+  band.colour_count = colour.count;
+  return band;
+}
+
+}  // namespace
+
+TrainingSupernova prepare_supernova(const LightCurve& light_curve, const Supernova& supernova, double t_0_guess,
+                                    const SpectralTemplate& bases, const PassbandCatalogue& catalogue,
+                                    const Extinction& dust, std::pair<double, double> phases) {
+  constexpr double rest_step = 10.0;
+  TrainingSupernova out;
+  out.name = supernova.name;
+  out.survey = supernova.survey;
+  out.z_helio = supernova.z_helio;
+  out.t_0_guess = t_0_guess;
+  std::map<std::string, std::vector<TrainingEpoch>> by_band;
+  for (const Epoch& epoch : light_curve.epochs) {
+    const double phase = (epoch.mjd - t_0_guess) / (1 + supernova.z_helio);
+    if (phase < phases.first || phase > phases.second) continue;
+    by_band[light_curve.passbands[epoch.passband]].push_back({epoch.mjd, epoch.flux, epoch.flux_error});
+  }
+  for (auto& [id, epochs] : by_band) {
+    const Passband& passband = catalogue.at(id).passband;
+    const auto [blue, red] = passband.core_range(0.02);
+    if (blue / (1 + supernova.z_helio) < bases.wavelength_min || red / (1 + supernova.z_helio) > bases.wavelength_max)
+      continue;
+    const double ebv = std::isfinite(supernova.mw_ebv) ? supernova.mw_ebv : 0.0;
+    TrainingBand band = prepare_band(id, band_weights(passband, supernova.z_helio, dust, ebv, rest_step), bases);
+    std::stable_sort(epochs.begin(), epochs.end(),
+                     [](const TrainingEpoch& a, const TrainingEpoch& b) { return a.mjd < b.mjd; });
+    band.begin = out.epochs.size();
+    out.epochs.insert(out.epochs.end(), epochs.begin(), epochs.end());
+    band.end = out.epochs.size();
+    out.bands.push_back(std::move(band));
+  }
+  return out;
+}
+
+}  // namespace thirdrung
