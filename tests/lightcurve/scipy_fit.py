@@ -7,6 +7,7 @@ import math
 import tomllib
 
 import numpy as np
+from astropy.io import fits
 from astropy.table import Table
 from scipy.interpolate import BSpline, CubicSpline, RectBivariateSpline
 from scipy.optimize import least_squares
@@ -27,6 +28,18 @@ class Template:
     def __init__(self, arrays):
         self.a = arrays
         self.colour_spline = spline(arrays["colour_breakpoints"], arrays["colour_law"])
+
+    @classmethod
+    def read(cls, path):
+        """From a template file (docs/template-file.md)."""
+        names = {"phase_breakpoints": "PHI_PHASE", "wavelength_breakpoints": "PHI_WAVELENGTH", "log_flux": "PHI",
+                 "stretch_phase_breakpoints": "GAMMA_PHASE", "stretch_wavelength_breakpoints": "GAMMA_WAVELENGTH",
+                 "stretch_response": "GAMMA", "colour_breakpoints": "COLOUR_WAVELENGTH", "colour_law": "COLOUR",
+                 "scatter_phase": "EPOCH_SCATTER_PHASE", "scatter_wavelength": "EPOCH_SCATTER_WAVELENGTH",
+                 "log_epoch_scatter": "EPOCH_SCATTER", "colour_scatter_wavelength": "COLOUR_SCATTER_WAVELENGTH",
+                 "log_colour_scatter": "COLOUR_SCATTER"}
+        with fits.open(path, checksum=True) as file:
+            return cls({name: np.asarray(file[part].data, float) for name, part in names.items()})
 
     @staticmethod
     def _held(x, breakpoints):
