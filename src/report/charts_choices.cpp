@@ -56,7 +56,7 @@ Chart grid_chart(const ChartInput& input) {
          {"z_max", z_max[i]},
          {"shift", rounded(shift[i], 5)},
          {"reference", reference},
-         {"text", reference ? "reference" : signed_fixed(1000 * shift[i], decimals)},
+         {"text", reference ? "0" : signed_fixed(1000 * shift[i], decimals)},
          {"error_text", reference ? "" : "± " + fixed(1000 * error[i], decimals)},
          {"tip", fmt::format("{:.4g} < z < {:.4g}\nΔa_B = {}\n{:.0f} supernovae", z_min[i], z_max[i],
                              reference ? "0 (reference)" : signed_with_error(shift[i], error[i]), number[i])}});
@@ -91,7 +91,8 @@ Chart grid_chart(const ChartInput& input) {
   const int height = room ? std::max(180, 70 + 38 * static_cast<int>(lows.size())) : 420;
   return {"zrange-grid",
           "Redshift range",
-          "Δa_B against the reference range and the error of that difference, both in thousandths.",
+          "Δa_B against the reference range and the error of that difference, both in thousandths. Outlined: the "
+          "reference.",
           highs.size() <= 6 ? "third" : "full",
           height,
           spec,
@@ -138,12 +139,13 @@ Chart scan_chart(const ChartInput& input) {
   const double largest = std::max(std::abs(range.low), std::abs(range.high));
   json spec = bare_spec(input);
   add_rows(spec, "rows", rows);
-  const int text_room = 190;
+  // On a narrow screen the numbers on the right give way; they are in the hover.
+  spec["signals"].push_back({{"name", "room"}, {"update", "width < 320 ? 0 : 190"}});
   spec["scales"].push_back({{"name", "x"},
                             {"type", "linear"},
                             {"zero", false},
                             {"domain", {-largest, largest}},
-                            {"range", {{"signal", fmt::format("[0, max(60, width - {})]", text_room)}}}});
+                            {"range", {{"signal", "[0, width - room]"}}}});
   spec["scales"].push_back(
       {{"name", "y"}, {"type", "point"}, {"range", "height"}, {"domain", order}, {"padding", 0.6}});
   spec["scales"].push_back({{"name", "label"}, {"type", "ordinal"}, {"domain", order}, {"range", labels}});
@@ -152,7 +154,7 @@ Chart scan_chart(const ChartInput& input) {
                    {"orient", "bottom"},
                    {"title", "Δa_B, with the error of the difference"},
                    {"grid", true},
-                   {"tickCount", {{"signal", "ceil((width - 190) / 90)"}}},
+                   {"tickCount", {{"signal", "ceil((width - room) / 90)"}}},
                    {"format", "+.3~f"}},
                   {{"scale", "y"},
                    {"orient", "left"},
@@ -179,6 +181,7 @@ Chart scan_chart(const ChartInput& input) {
                     {"baseline", {{"value", "middle"}}},
                     {"fontSize", {{"value", 11}}},
                     {"fontWeight", {{"signal", "datum.far ? 600 : 400"}}},
+                    {"opacity", {{"signal", "room > 0 ? 1 : 0"}}},
                     {"fill", {{"value", "@ink"}}},
                     {"text", {{"field", field}}}}}}}};
   };

@@ -24,6 +24,7 @@ struct Against {
   Member error_member;
   const char* per;
   const char* what;
+  const char* parameter;  ///< Of shared_errors(), "" for none.
 };
 
 Chart residual_chart(const ChartInput& input, const Against& against, const Range& vertical) {
@@ -46,7 +47,14 @@ Chart residual_chart(const ChartInput& input, const Against& against, const Rang
   if (*against.error) fields.push_back(against.error);
   fields.push_back("r");
   fields.push_back("re");
-  return {against.id, against.title, slope_text(x, r, re, against.per), "third", 270, spec, {{"fields", fields}}, ""};
+  return {against.id,
+          against.title,
+          slope_text(x, r, re, against.per, shared_errors(input, against.parameter)),
+          "third",
+          270,
+          spec,
+          {{"fields", fields}},
+          ""};
 }
 
 /// One column a survey, its supernovae spread sideways, its weighted mean beside them.
@@ -129,17 +137,17 @@ ChartSection residual_section(const ChartInput& input) {
   if (!has_residuals(input.all)) return section;
   const Range vertical = residual_range(input.all);
   const Against list[] = {
-      {"residual-redshift", "Redshift", "", "z", "", &SupernovaRow::z_flow, nullptr, "per unit of z", "z"},
+      {"residual-redshift", "Redshift", "", "z", "", &SupernovaRow::z_flow, nullptr, "per unit of z", "z", ""},
       {"residual-stretch", "Stretch", "stretch s", "s", "se", &SupernovaRow::s, &SupernovaRow::s_error, "per unit of s",
-       "s"},
+       "s", "alpha"},
       {"residual-colour", "Colour", "colour c (mag)", "c", "ce", &SupernovaRow::c, &SupernovaRow::c_error, "per mag",
-       "c"},
+       "c", "beta"},
       {"residual-mass", "Host mass", "host mass, log₁₀ (M / M☉)", "mass", "masse", &SupernovaRow::host_log_mass,
-       &SupernovaRow::host_log_mass_error, "per dex", "log M"},
+       &SupernovaRow::host_log_mass_error, "per dex", "log M", ""},
       {"residual-phase", "Phase of the first point", "rest-frame phase of first point (d)", "p0", "",
-       &SupernovaRow::first_phase, nullptr, "per day", "phase"},
+       &SupernovaRow::first_phase, nullptr, "per day", "phase", ""},
       {"residual-chi2", "Light-curve fit", "χ² / degree of freedom of the light-curve fit", "chir", "", nullptr,
-       nullptr, "per unit of χ²/dof", "χ²/dof"},
+       nullptr, "per unit of χ²/dof", "χ²/dof", ""},
   };
   for (Against against : list) {
     SupernovaRows with_ratio;

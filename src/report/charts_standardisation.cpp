@@ -90,7 +90,7 @@ Chart relation_chart(const ChartInput& input, const Correction& correction) {
       correction.id,
       correction.title,
       fmt::format("{} = {}. With the correction: {}", correction.symbol, with_error(parameter.value, parameter.error),
-                  lower_case_slope(slope_text(x, r, re, correction.per))),
+                  lower_case_slope(slope_text(x, r, re, correction.per, shared_errors(input, correction.parameter)))),
       "third",
       430,
       spec,

@@ -129,7 +129,7 @@ void show_supernovae(json& spec, const std::string& condition) {
 json supernova_points(const ChartInput& input, const std::string& x, const std::string& y) {
   const std::size_t count = used_count(input.all);
   const int size = count <= 250 ? 34 : count <= 1000 ? 20 : 9;
-  const double opacity = count <= 1000 ? 0.85 : 0.6;
+  const double opacity = count <= 1000 ? 0.85 : 0.6, rim = count <= 1000 ? 0.7 : 0.2;
   return {
       {"type", "symbol"},
       {"name", "points"},
@@ -143,7 +143,7 @@ json supernova_points(const ChartInput& input, const std::string& x, const std::
           {"y", place("y", y)},
           {"size", {{"scale", "shape_size"}, {"field", "survey"}, {"mult", size}}},
           {"stroke", {{"signal", "picked && mask[datum.i] ? '@ink' : '@paper'"}}},
-          {"strokeWidth", {{"value", 0.7}}},
+          {"strokeWidth", {{"value", rim}}},
           {"opacity", {{"signal", fmt::format("picked && !mask[datum.i] ? 0.13 : {}", opacity)}}}}}}}};
 }
 
@@ -257,11 +257,32 @@ std::vector<double> used_values(const SupernovaRows& all, double SupernovaRow::*
 }
 
 std::string slope_text(const std::vector<double>& x, const std::vector<double>& y, const std::vector<double>& error,
-                       const std::string& per) {
+                       const std::string& per, const std::vector<double>& shared) {
   const Trend trend = fit_trend(x, y, error);
   if (!std::isfinite(trend.slope)) return "";
-  return fmt::format("Slope {} mag {} ({:.1f} σ).", signed_with_error(trend.slope, trend.slope_error), per,
-                     std::abs(trend.slope) / trend.slope_error);
+  const std::string slope = signed_with_error(trend.slope, trend.slope_error);
+  if (shared.empty())
+    return fmt::format("Slope {} mag {} ({:.1f} σ from zero).", slope, per, std::abs(trend.slope) / trend.slope_error);
+  const double expected = slope_of_shared_errors(x, error, shared);
+  return fmt::format("Slope {} mag {}; {} is made by errors of measurement that enter both axes, {:.1f} σ from it.",
+                     slope, per, signed_fixed(expected, decimals_for(trend.slope_error)),
+                     std::abs(trend.slope - expected) / trend.slope_error);
+}
+
+std::vector<double> shared_errors(const ChartInput& input, const std::string& parameter) {
+  std::vector<double> result;
+  if (parameter != "alpha" && parameter != "beta") return result;
+  const double alpha = input.run.summary.parameter("alpha").value, beta = input.run.summary.parameter("beta").value;
+  if (!std::isfinite(alpha) || !std::isfinite(beta)) return result;
+  for (const SupernovaRow& row : input.all.rows) {
+    if (!row.used) continue;
+    if (parameter == "alpha")
+      result.push_back(row.cov_mb_s + alpha * row.s_error * row.s_error - beta * row.cov_s_c);
+    else
+      result.push_back(row.cov_mb_c + alpha * row.cov_s_c - beta * row.c_error * row.c_error);
+  }
+  const bool known = std::any_of(result.begin(), result.end(), [](double v) { return std::isfinite(v); });
+  return known ? result : std::vector<double>{};
 }
 
 }  // namespace thirdrung

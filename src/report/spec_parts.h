@@ -62,8 +62,14 @@ Range range_of(const std::vector<double>& values, const std::vector<double>& err
 /// Values of one member for the supernovae that are used.
 std::vector<double> used_values(const SupernovaRows& all, double SupernovaRow::*member);
 
-/// "slope +0.012 ± 0.034 mag per unit" of a trend, with how many standard deviations it is from zero.
+/// "Slope +0.012 ± 0.034 mag per unit (0.4 σ from zero)." of a trend.
+/// @param shared covariances of the errors of x and y, where both contain the same measurement: the slope that they
+/// alone make is then told too, and the significance counted from it. Empty: none.
 std::string slope_text(const std::vector<double>& x, const std::vector<double>& y, const std::vector<double>& error,
-                       const std::string& per);
+                       const std::string& per, const std::vector<double>& shared = {});
+
+/// Covariance of a residual with the measured s ("alpha") or c ("beta") of the used supernovae, since the residual
+/// contains both: cov(m + α s - β c, s or c) with the covariances of the light-curve fit. Empty for any other name.
+std::vector<double> shared_errors(const ChartInput& input, const std::string& parameter);
 
 }  // namespace thirdrung

@@ -20,6 +20,7 @@ struct SupernovaRow {
   double mw_ebv = missing, host_log_mass = missing, host_log_mass_error = missing, host_mass_probability = missing;
   double t_0 = missing, t_0_error = missing;
   double m_b = missing, m_b_error = missing, s = missing, s_error = missing, c = missing, c_error = missing;
+  double cov_mb_s = missing, cov_mb_c = missing, cov_s_c = missing;  ///< Covariances of the fit.
   double chi2 = missing, dof = missing, fit_probability = missing, first_phase = missing, last_phase = missing,
          dm15_b = missing;
   double m_standard = missing, m_standard_error = missing;  ///< Standardised magnitude [mag].

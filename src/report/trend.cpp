@@ -47,6 +47,20 @@ Trend fit_trend(std::span<const double> x, std::span<const double> y, std::span<
   return trend;
 }
 
+double slope_of_shared_errors(std::span<const double> x, std::span<const double> y_error,
+                              std::span<const double> covariance) {
+  // The covariances stand in the place of y, so that unsound points drop out alike.
+  const auto points = sound_points(x, covariance, y_error);
+  double sum = 0, mean = 0, shared = 0, spread = 0;
+  for (const Point& p : points) sum += p.weight, mean += p.weight * p.x;
+  mean /= sum;
+  for (const Point& p : points) {
+    shared += p.weight * p.y;
+    spread += p.weight * (p.x - mean) * (p.x - mean);
+  }
+  return spread > 0 ? shared / spread : 0;
+}
+
 std::vector<BinnedMean> binned_means(std::span<const double> x, std::span<const double> y,
                                      std::span<const double> y_error, std::size_t bins) {
   auto points = sound_points(x, y, y_error);

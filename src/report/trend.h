@@ -16,6 +16,12 @@ struct Trend {
 /// are not finite are left out.
 Trend fit_trend(std::span<const double> x, std::span<const double> y, std::span<const double> y_error);
 
+/// Slope that fit_trend() gives on average where y does not depend on the true x but shares the errors of measurement:
+/// Σ w cov(error of x, error of y) / Σ w (x - mean)², the bias of a regression with errors in x (Fuller 1987,
+/// Measurement Error Models, section 1.1). Points without a covariance are left out.
+double slope_of_shared_errors(std::span<const double> x, std::span<const double> y_error,
+                              std::span<const double> covariance);
+
 /// Weighted mean of y among points of neighbouring x.
 struct BinnedMean {
   double low = 0, high = 0;  ///< Range of x of its points.

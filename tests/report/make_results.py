@@ -136,12 +136,12 @@ def main():
         remarks = [] if probability > 0.001 else ["the template does not describe the data (fit probability 1e-05)"]
         if bad_epochs:
             remarks.append("%d epochs mistrusted" % bad_epochs)
-        fits.append((name, survey, z, t0, 0.1 + 0.1 * rng.random(), m, me, s_fit, se, c_fit, ce, 0.001, 0.0005, 0.0002, 0.2 * me * se, 0.5 * me * ce, 0.1 * se * ce,
+        fits.append((name, survey, z, t0, 0.1 + 0.1 * rng.random(), m, me, s_fit, se, c_fit, ce, 0.001, 0.0005, 0.0002, 0.0, 0.0, 0.0,
                      chi2, dof, probability, ",".join(survey.split()[0].lower() + "_" + b for b in bands), epochs, first, last, 1.1 - 1.2 * (s_fit - 1),
                      "har_u: bluer than the template; har_y: no passband" if n % 17 == 3 else "", bad_epochs, probability > 0.001, "; ".join(remarks)))
         nomass = n % 23 == 5
         sample.append((name, survey, ra, dec, 0.0, 0.0, z * 1.001, z, vpec, z, 250 / 299792.458, 0.02 + 0.1 * rng.random() ** 2, math.nan if nomass else mass, math.nan if nomass else 0.15,
-                       0.5 if nomass else pmass, m, me, s_fit, se, c_fit, ce, 0.2 * me * se, 0.5 * me * ce, 0.1 * se * ce, probability, first, last, chi2, dof,
+                       0.5 if nomass else pmass, m, me, s_fit, se, c_fit, ce, 0.0, 0.0, 0.0, probability, first, last, chi2, dof,
                        not rules, rules[0] if rules else "", "; ".join(rules)))
         if not rules:
             standard = m + ALPHA * (s_fit - 1) - BETA * c_fit + GAMMA * (pmass - 0.5)
