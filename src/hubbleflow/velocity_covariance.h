@@ -43,7 +43,7 @@ class VelocityCorrelation {
 ///
 /// <v_i v_j> = g_i g_j [sin a_i sin a_j Psi_perp(r) + cos a_i cos a_j Psi_par(r)], a the angles between the lines of
 /// sight and the separation vector, g = D'(z)/D'(0), D' = D f H/(1 + z) (Hui & Greene 2006, Phys. Rev. D 73, 123526;
-/// Davis et al. 2011, ApJ 741, 67, appendix). Comoving distances in flat LCDM of the same matter density.
+/// Davis et al. 2011, ApJ 741, 67). Comoving distances in flat LCDM of the same matter density.
 Eigen::MatrixXd radial_velocity_covariance(std::span<const FlowSupernova> supernovae,
                                            const VelocityCovarianceOptions& options);
 

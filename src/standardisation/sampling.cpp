@@ -3,25 +3,13 @@
 #include <Eigen/Eigenvalues>
 #include <algorithm>
 #include <cmath>
-#include <random>
 #include <stdexcept>
 
-#include "base/constants.h"
+#include "standardisation/deviates.h"
 
 namespace thirdrung {
 
 namespace {
-
-/// Uniform and normal deviates that are the same on every platform.
-class Deviates {
- public:
-  explicit Deviates(std::uint64_t seed) : engine_(seed) {}
-  double uniform() { return (static_cast<double>(engine_() >> 11) + 0.5) * 0x1p-53; }
-  double normal() { return std::sqrt(-2.0 * std::log(uniform())) * std::cos(2.0 * constants::pi * uniform()); }
-
- private:
-  std::mt19937_64 engine_;
-};
 
 /// Integrated autocorrelation time with the self-consistent window of Sokal (1989 lectures): stop at 5 times itself.
 double autocorrelation_time(const std::vector<double>& chain) {
@@ -106,8 +94,7 @@ SamplingResult sample_hierarchical(std::span<const StandardisationDatum> data, c
     for (std::size_t k = 0; k < sampling.walkers; ++k) {
       // A partner from the other half; z is drawn from g(z) ~ 1/sqrt(z) on [1/2, 2].
       const std::size_t first = k < half ? half : 0;
-      const std::size_t partner =
-          first + std::min(half - 1, static_cast<std::size_t>(deviates.uniform() * static_cast<double>(half)));
+      const std::size_t partner = first + deviates.below(half);
       const double root_z = (1.0 + deviates.uniform()) / std::sqrt(2.0);
       const double z = root_z * root_z;
       const Eigen::VectorXd trial = walkers[partner] + z * (walkers[k] - walkers[partner]);
