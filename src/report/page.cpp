@@ -84,12 +84,15 @@ void write_panel_files(const std::vector<std::string>& panels, const std::filesy
   if (fault)
     throw OutputError(
         fmt::format("{}: the folder of the light curves cannot be made ({})", folder.string(), fault.message()));
-  for (std::size_t from = 0, number = 0; from < panels.size(); from += a_file, ++number) {
+  std::size_t number = 0;
+  for (std::size_t from = 0; from < panels.size(); from += a_file, ++number) {
     const std::size_t to = std::min(from + a_file, panels.size());
     write_file_atomically(
         folder / fmt::format("part-{}.js", number),
         fmt::format("thirdrungLightCurves({},[{}]);\n", number, escaped_for_script(joined(panels, from, to))));
   }
+  // An earlier, larger page may have left more of them.
+  while (std::filesystem::remove(folder / fmt::format("part-{}.js", number), fault)) ++number;
 }
 
 std::vector<ChartSection> all_sections(const ChartInput& input) {

@@ -22,8 +22,8 @@ json real_columns(const SupernovaRows& all) {
   };
   const Field fields[] = {{"ra", &SupernovaRow::ra, 8},
                           {"dec", &SupernovaRow::dec, 8},
-                          {"zhel", &SupernovaRow::z_helio, 6},
-                          {"zcmb", &SupernovaRow::z_cmb, 6},
+                          {"z_helio", &SupernovaRow::z_helio, 6},
+                          {"z_cmb", &SupernovaRow::z_cmb, 6},
                           {"z", &SupernovaRow::z_flow, 6},
                           {"ze", &SupernovaRow::z_flow_error, 3},
                           {"vpec", &SupernovaRow::v_pec, 4},

@@ -98,7 +98,7 @@ function listSection() {
   el('table', {id: 'list'}, el('thead', {}, el('tr', {}, heads)), el('tbody', {id: 'list-body'})));
   return section('list-of-supernovae', 'List of supernovae', 'Names open the light curve; headings sort. Search looks at names, surveys, bands and flags.',
     el('div', {class: 'tools'},
-      el('input', {type: 'search', id: 'search', placeholder: 'search', 'aria-label': 'Search the list', oninput: (event) => { list.words = event.target.value; list.update(); }}),
+      el('label', {for: 'search'}, 'search'), el('input', {type: 'search', id: 'search', oninput: (event) => { list.words = event.target.value; list.update(); }}),
       el('span', {class: 'choices', role: 'radiogroup', 'aria-label': 'Show'}, choice('all', 'all'), choice('used', 'used'), choice('out', 'left out'), choice('flagged', 'flagged'), choice('marked', 'marked')),
       el('span', {id: 'list-count', class: 'count', 'aria-live': 'polite'}),
       el('button', {type: 'button', class: 'quiet', onclick: () => save('supernovae.csv', wholeCsv(list.rows), 'text/csv')}, 'CSV')),

@@ -34,7 +34,7 @@ const selection = {
   },
 };
 
-const csvNames = {z: 'z_flow', ze: 'z_flow_error', zhel: 'z_helio', zcmb: 'z_cmb', vpec: 'v_pec', mass: 'host_log_mass', masse: 'host_log_mass_error',
+const csvNames = {z: 'z_flow', ze: 'z_flow_error', vpec: 'v_pec', mass: 'host_log_mass', masse: 'host_log_mass_error',
   m: 'm_b', me: 'm_b_error', se: 's_error', ce: 'c_error', m0: 'm_b_standardised', m0e: 'm_b_standardised_error', r: 'residual', re: 'residual_error',
   rs: 'residual_without_alpha', rc: 'residual_without_beta', rm: 'residual_without_gamma', chir: 'chi2_per_dof', prob: 'fit_probability', p0: 'first_phase',
   p1: 'last_phase', infl: 'delta_ab', infle: 'delta_ab_error', w: 'weight', survey_name: 'survey', name: 'supernova', cut: 'removed_by', cuts: 'removed_by_all',
