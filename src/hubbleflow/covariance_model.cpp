@@ -4,6 +4,7 @@
 
 #include <Eigen/Eigenvalues>
 #include <cmath>
+#include <stdexcept>
 
 #include "base/constants.h"
 #include "base/error.h"
@@ -117,6 +118,33 @@ CovariancePart velocity_scatter_part(std::span<const FlowSupernova> supernovae, 
     part.diagonal[static_cast<Eigen::Index>(i)] = velocity * velocity + redshift * redshift;
   }
   return part;
+}
+
+CovarianceModel statistical_model(std::span<const FlowSupernova> supernovae,
+                                  std::span<const StandardisedMagnitude> magnitudes, const Expansion& expansion,
+                                  double sigma_v, std::span<const double> z_errors) {
+  if (magnitudes.size() != supernovae.size()) throw std::logic_error("magnitudes and supernovae differ in number");
+  const auto n = static_cast<Eigen::Index>(supernovae.size());
+  CovarianceModel model;
+  CovariancePart fit{"light-curve fit", "statistical", Eigen::VectorXd(n), {}};
+  CovariancePart intrinsic{"intrinsic scatter", "statistical", Eigen::VectorXd(n), {}};
+  for (std::size_t i = 0; i < supernovae.size(); ++i) {
+    if (magnitudes[i].name != supernovae[i].name)
+      throw std::logic_error("magnitudes in another order than the supernovae");
+    model.supernovae.push_back(supernovae[i].name);
+    fit.diagonal[static_cast<Eigen::Index>(i)] = magnitudes[i].fit_variance;
+    intrinsic.diagonal[static_cast<Eigen::Index>(i)] = magnitudes[i].intrinsic_variance;
+  }
+  model.parts = {fit, intrinsic, velocity_scatter_part(supernovae, expansion, sigma_v, z_errors)};
+  return model;
+}
+
+void add_coefficient_shifts(CovarianceModel& model, const Eigen::MatrixXd& shifts) {
+  for (Eigen::Index k = 0; k < shifts.cols(); ++k) {
+    if (shifts.col(k).cwiseAbs().maxCoeff() == 0.0) continue;  // a coefficient that was held
+    model.systematics.push_back(
+        {fmt::format("standardisation coefficients {}", k + 1), "standardisation", 1.0, "sigma", shifts.col(k)});
+  }
 }
 
 Eigen::VectorXd effective_shift(std::span<const FlowSupernova> baseline, const FlowOptions& flow,

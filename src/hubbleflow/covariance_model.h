@@ -5,6 +5,7 @@
 #include <vector>
 
 #include "hubbleflow/flow_sample.h"
+#include "standardisation/standardisation.h"
 
 namespace thirdrung {
 
@@ -51,6 +52,16 @@ CovariancePart constant_part(std::string name, std::size_t supernovae, double si
 /// (NaN: none).
 CovariancePart velocity_scatter_part(std::span<const FlowSupernova> supernovae, const Expansion& expansion,
                                      double sigma_v, std::span<const double> z_errors = {});
+
+/// The statistical parts of a standardised sample: light-curve fit, intrinsic scatter, uncorrelated velocities with
+/// redshift errors.
+/// @param magnitudes of the same supernovae in the same order (std::logic_error otherwise).
+CovarianceModel statistical_model(std::span<const FlowSupernova> supernovae,
+                                  std::span<const StandardisedMagnitude> magnitudes, const Expansion& expansion,
+                                  double sigma_v, std::span<const double> z_errors = {});
+
+/// Adds the errors of alpha, beta and gamma, as coefficient_shifts() gives them, under the kind "standardisation".
+void add_coefficient_shifts(CovarianceModel& model, const Eigen::MatrixXd& shifts);
 
 /// Shift of the magnitudes that a changed input amounts to: minus five times the change of the single intercepts. Takes
 /// any change of magnitudes, redshifts or expansion, from a rerun or an analytic step; both lists in one order.

@@ -78,3 +78,27 @@ TEST_CASE("unsound covariance models are named") {
   model.correlation = Eigen::MatrixXd::Constant(2, 2, 1.5);
   CHECK_THROWS_AS(check_covariance_model(model), InputError);
 }
+
+TEST_CASE("a standardised sample becomes a covariance model") {
+  const FlowSample sample = exact_flow(30, 0.71, 35);
+  std::vector<StandardisedMagnitude> magnitudes;
+  for (const auto& s : sample.supernovae) {
+    StandardisedMagnitude m;
+    m.name = s.name;
+    m.fit_variance = 0.004;
+    m.intrinsic_variance = 0.01;
+    magnitudes.push_back(m);
+  }
+  CovarianceModel model = statistical_model(sample.supernovae, magnitudes, {}, 250.0);
+  Eigen::MatrixXd shifts = Eigen::MatrixXd::Constant(30, 3, 0.002);
+  shifts.col(0).setZero();
+  add_coefficient_shifts(model, shifts);
+  check_covariance_model(model);
+  CHECK(model.systematics.size() == 2);
+  const Eigen::MatrixXd total = model.total();
+  const double velocity = 5.0 * velocity_response(sample.supernovae[4].z_flow, {}) * 250.0 / 299792.458;
+  CHECK(total(4, 4) == Approx(0.014 + velocity * velocity + 8e-6));
+  CHECK(total(4, 5) == Approx(8e-6));
+  magnitudes[3].name = "other";
+  CHECK_THROWS_AS(statistical_model(sample.supernovae, magnitudes, {}, 250.0), std::logic_error);
+}
