@@ -39,6 +39,12 @@ struct CalibratedPassband {
   double magnitude_of_flux(double flux_ujy) const;
 };
 
+/// The same calibration with the whole curve moved by `shift` [angstrom]: what magnitude zero means follows the moved
+/// curve.
+/// @param standard_star needed (std::logic_error without) where the system refers to it.
+CalibratedPassband with_wavelength_shift(const CalibratedPassband& calibrated, double shift_angstrom,
+                                         const std::optional<Spectrum>& standard_star);
+
 /// Calibration by passband id.
 class PassbandCatalogue {
  public:

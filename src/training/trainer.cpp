@@ -250,7 +250,7 @@ Eigen::Matrix4d fit_supernova(const SpectralTemplate& model, const TrainingSuper
     }
     at = next;
     values = std::move(next_values);
-    robust_weight = robust_weights_of(model, sn, at, robust_degrees);
+    if (robust_degrees > 0) robust_weight = robust_weights_of(model, sn, at, robust_degrees);
     settled = std::sqrt(std::max(0.0, move.dot(normal * move)));
     if (settled < 1e-4) break;
   }

@@ -40,7 +40,8 @@ struct TrainingState {
 SupernovaUnknowns scan_supernova(const SpectralTemplate& model, const TrainingSupernova& sn,
                                  const UnknownsPrior& prior);
 
-/// Fits one supernova's unknowns to a fixed template, noise rebuilt at every step. Robust weights are updated in place.
+/// Fits one supernova's unknowns to a fixed template, noise rebuilt at every step. Robust weights are updated in place,
+/// or held if `robust_degrees` is not positive.
 /// Returns the 4×4 covariance; `half_objective` gets −ln of the marginal likelihood (Laplace), for cross-validation.
 Eigen::Matrix4d fit_supernova(const SpectralTemplate& model, const TrainingSupernova& sn, const UnknownsPrior& prior,
                               double robust_degrees, SupernovaUnknowns& at, Eigen::VectorXd& robust_weight,

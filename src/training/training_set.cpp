@@ -23,7 +23,9 @@ std::vector<CubicBasis::Weights> basis_at(const CubicBasis& basis, const std::ve
   return out;
 }
 
-TrainingBand prepare_band(const std::string& id, BandWeights weights, const SpectralTemplate& bases) {
+}  // namespace
+
+TrainingBand band_on_bases(const std::string& id, BandWeights weights, const SpectralTemplate& bases) {
   TrainingBand band;
   band.passband = id;
   band.weights = std::move(weights);
@@ -41,8 +43,6 @@ TrainingBand prepare_band(const std::string& id, BandWeights weights, const Spec
   band.colour_count = colour.count;
   return band;
 }
-
-}  // namespace
 
 TrainingSupernova prepare_supernova(const LightCurve& light_curve, const Supernova& supernova, double t_0_guess,
                                     const SpectralTemplate& bases, const PassbandCatalogue& catalogue,
@@ -65,7 +65,7 @@ TrainingSupernova prepare_supernova(const LightCurve& light_curve, const Superno
     if (blue / (1 + supernova.z_helio) < bases.wavelength_min || red / (1 + supernova.z_helio) > bases.wavelength_max)
       continue;
     const double ebv = std::isfinite(supernova.mw_ebv) ? supernova.mw_ebv : 0.0;
-    TrainingBand band = prepare_band(id, band_weights(passband, supernova.z_helio, dust, ebv, rest_step), bases);
+    TrainingBand band = band_on_bases(id, band_weights(passband, supernova.z_helio, dust, ebv, rest_step), bases);
     std::stable_sort(epochs.begin(), epochs.end(),
                      [](const TrainingEpoch& a, const TrainingEpoch& b) { return a.mjd < b.mjd; });
     band.begin = out.epochs.size();

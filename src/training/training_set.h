@@ -44,6 +44,9 @@ struct TrainingSupernova {
   double t_0_guess = 0;
 };
 
+/// A band's response on the template's bases; its epochs are left to the caller.
+TrainingBand band_on_bases(const std::string& id, BandWeights weights, const SpectralTemplate& bases);
+
 /// Puts one supernova's bands onto the template's bases. Bands outside the template's bases, and epochs more than
 /// `phases` (rest-frame days) from `t_0_guess`, are left out.
 TrainingSupernova prepare_supernova(const LightCurve& light_curve, const Supernova& supernova, double t_0_guess,

@@ -6,10 +6,10 @@
 #include <algorithm>
 #include <cmath>
 #include <map>
+#include <span>
 
 #include "base/parallel.h"
-#include "tables/fits_vector_column.h"
-#include "tables/read_write.h"
+#include "tables/fits_image.h"
 
 namespace thirdrung {
 
@@ -98,8 +98,8 @@ double half_chi2_of(const TrainingSpectrum& spectrum, const SpectrumTerms& terms
 }
 
 /// The bins of a spectrum that carry information: inside the range, positive, and of signal to noise above two.
-TrainingSpectrum usable_bins(const std::string& name, const std::vector<double>& grid, const std::vector<double>& flux,
-                             const std::vector<double>& error, const SpectraOptions& options) {
+TrainingSpectrum usable_bins(const std::string& name, std::span<const double> grid, std::span<const double> flux,
+                             std::span<const double> error, const SpectraOptions& options) {
   TrainingSpectrum out;
   out.supernova = name;
   std::vector<double> log_flux;
@@ -165,12 +165,18 @@ SpectrumSystem spectrum_system(const SpectralTemplate& model, const TrainingSpec
 
 std::vector<TrainingSpectrum> read_training_spectra(const std::filesystem::path& path, const SpectraOptions& options,
                                                     std::vector<std::string>& left_out) {
-  const Table table = read_table(path);
-  const auto flux = read_fits_vectors(path, "SPECTRA", "flux");
-  const auto error = read_fits_vectors(path, "SPECTRA", "error");
-  const auto grid_rows = read_fits_vectors(path, "WAVELENGTH", "wavelength");
-  std::vector<double> grid;
-  for (const auto& row : grid_rows) grid.insert(grid.end(), row.begin(), row.end());
+  const FitsReader file(path);
+  const Table table = file.table("SPECTRA");
+  const FitsImage flux = file.array_column("SPECTRA", "flux");
+  const FitsImage error = file.array_column("SPECTRA", "error");
+  const std::vector<double> grid = file.table("WAVELENGTH").reals_in("wavelength", "Angstrom");
+  if (flux.shape != error.shape || flux.shape.at(1) != grid.size()) {
+    throw InputError({path.string(), {}, "flux"}, "flux, error and wavelength differ in length",
+                     "give one flux and error a wavelength");
+  }
+  const auto row_of = [&](const FitsImage& image, std::size_t i) {
+    return std::span<const double>(image.values).subspan(i * grid.size(), grid.size());
+  };
   const auto names = table.strings("supernova");
   const auto quality = table.strings("phase_quality");
   const auto subtype = table.strings("subtype");
@@ -193,7 +199,7 @@ std::vector<TrainingSpectrum> read_training_spectra(const std::filesystem::path&
     } else if (!(phase[i] >= options.phase_min && phase[i] <= options.phase_max)) {
       leave("phase outside the range");
     } else {
-      TrainingSpectrum spectrum = usable_bins(names[i], grid, flux[i], error[i], options);
+      TrainingSpectrum spectrum = usable_bins(names[i], grid, row_of(flux, i), row_of(error, i), options);
       if (spectrum.wavelength.size() < 100) {
         leave("fewer than 100 usable bins");
         continue;
