@@ -147,6 +147,7 @@ void hold_undetermined(const Problem& problem, Solution& solution) {
 
 std::vector<double> cauchy_weights(const std::vector<double>& pulls, double scale) {
   std::vector<double> out;
+  out.reserve(pulls.size());
   for (const double pull : pulls) out.push_back(1 / (1 + pull * pull / (scale * scale)));
   return out;
 }
