@@ -73,16 +73,21 @@ struct Row {
 };
 
 /// Survey by survey: its own supernovae, then those it shares.
-std::vector<Row> rows_of(const SimulationOptions& options, const std::vector<Slot>& slots) {
+std::vector<Row> rows_of(const SimulationOptions& options, const std::vector<Slot>& slots,
+                         const std::vector<SupernovaTruth>& truths) {
   std::vector<Row> out;
   for (std::size_t k = 0; k < options.surveys.size(); ++k) {
     const SimulatedSurvey& survey = options.surveys[k];
     for (std::size_t i = 0; i < slots.size(); ++i) {
       if (slots[i].survey == k) out.push_back({k, i});
     }
-    for (std::size_t i = 0; i < slots.size() && survey.shared > 0; ++i) {
+    std::size_t shared = 0;
+    for (std::size_t i = 0; i < slots.size() && shared < survey.shared; ++i) {
       const bool theirs = options.surveys[slots[i].survey].name == survey.shared_with;
-      if (theirs && slots[i].number < survey.shared) out.push_back({k, i});
+      const bool in_reach = truths[i].z_flow > survey.z_min && truths[i].z_flow < survey.z_max;
+      if (!theirs || !in_reach) continue;
+      out.push_back({k, i});
+      ++shared;
     }
   }
   return out;
@@ -123,7 +128,7 @@ SimulatedSample simulate(const SimulationOptions& options, const SpectralTemplat
                      });
   });
 
-  const std::vector<Row> rows = rows_of(options, slots);
+  const std::vector<Row> rows = rows_of(options, slots, out.truths);
   out.light_curves.resize(rows.size());
   parallel_for(rows.size(), options.threads, [&](std::size_t r) {
     const Slot& slot = slots[rows[r].slot];

@@ -118,8 +118,8 @@ struct SimulatedSurvey {
   double peak_limit = 99;       ///< m_B at which half of the supernovae are found [mag],
   double peak_limit_width = 0;  ///< and the width of the fall [mag].
 
-  std::string shared_with;  ///< Name of an earlier survey whose first
-  std::size_t shared = 0;   ///< supernovae are observed by this one too, besides its own.
+  std::string shared_with;  ///< An earlier survey, of whose supernovae
+  std::size_t shared = 0;   ///< the first so many within this one's redshifts are observed here too.
 };
 
 struct SimulationOptions {
