@@ -7,6 +7,7 @@
 #include <string>
 #include <vector>
 
+#include "base/progress.h"
 #include "light/dust_law.h"
 #include "light/passband_catalogue.h"
 #include "lightcurve/photometry.h"
@@ -147,8 +148,9 @@ struct LightCurveFits {
 /// Fits every light curve with the supernova of the same name and survey, on `threads` threads (0: all cores). The
 /// result does not depend on their number. Light curves without a supernova, a usable redshift or reddening, or a
 /// single usable epoch are set aside with the reason.
+/// @param progress to advance by one a light curve; a line of its own on the terminal if there is none.
 LightCurveFits fit_all(std::span<const LightCurve> light_curves, std::span<const Supernova> supernovae,
                        const PreparedTemplate& prepared, const PassbandCatalogue& catalogue, const Extinction& dust,
-                       const FitOptions& options = {}, int threads = 0);
+                       const FitOptions& options = {}, int threads = 0, Progress* progress = nullptr);
 
 }  // namespace thirdrung

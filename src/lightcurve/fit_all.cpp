@@ -33,16 +33,17 @@ Outcome fit_one(const LightCurve& light_curve, const Supernova* supernova, const
 
 LightCurveFits fit_all(std::span<const LightCurve> light_curves, std::span<const Supernova> supernovae,
                        const PreparedTemplate& prepared, const PassbandCatalogue& catalogue, const Extinction& dust,
-                       const FitOptions& options, int threads) {
+                       const FitOptions& options, int threads, Progress* progress) {
   std::map<std::pair<std::string, std::string>, const Supernova*> by_name;
   for (const Supernova& supernova : supernovae) by_name.try_emplace({supernova.survey, supernova.name}, &supernova);
   std::vector<Outcome> outcomes(light_curves.size());
-  Progress progress("Light curves", light_curves.size());
+  std::optional<Progress> own;
+  if (progress == nullptr) progress = &own.emplace("Light curves", light_curves.size());
   parallel_for(light_curves.size(), threads, [&](std::size_t i) {
     const auto found = by_name.find({light_curves[i].survey, light_curves[i].supernova});
     outcomes[i] =
         fit_one(light_curves[i], found == by_name.end() ? nullptr : found->second, prepared, catalogue, dust, options);
-    progress.advance();
+    progress->advance();
   });
   LightCurveFits out;
   for (std::size_t i = 0; i < outcomes.size(); ++i) {

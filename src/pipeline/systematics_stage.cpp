@@ -1,0 +1,250 @@
+#include "pipeline/systematics_stage.h"
+
+#include <fmt/format.h>
+
+#include <algorithm>
+#include <map>
+#include <set>
+
+#include "base/error.h"
+#include "base/parallel.h"
+#include "base/progress.h"
+#include "lightcurve/results.h"
+#include "pipeline/sample_stage.h"
+#include "pipeline/standardisation_stage.h"
+#include "pipeline/table_tools.h"
+#include "pipeline/varied_inputs.h"
+#include "tables/fits_image.h"
+
+namespace thirdrung {
+
+namespace {
+
+using Key = std::pair<std::string, std::string>;
+
+std::vector<Key> keys_of(const Table& fits) {
+  const auto survey = fits.strings("survey"), supernova = fits.strings("supernova");
+  std::vector<Key> out;
+  for (std::size_t i = 0; i < survey.size(); ++i) out.emplace_back(survey[i], supernova[i]);
+  return out;
+}
+
+/// What stays while inputs move.
+struct Baseline {
+  const RunFile& run;
+  const RunInputs& inputs;
+  Table fits;                      ///< Of the supernovae in `names`.
+  std::vector<std::string> names;  ///< In the order of the shifts.
+  std::vector<bool> used;          ///< One each: in the fit of the coefficients.
+  StandardisationCoefficients coefficients;
+  std::vector<FlowSupernova> flow;
+};
+
+/// Light curves that a moved input touches.
+std::vector<LightCurve> touched(const MovedInput& moved, const std::vector<LightCurve>& all) {
+  std::vector<LightCurve> out;
+  for (const LightCurve& one : all) {
+    const bool survey = moved.surveys.empty() ||
+                        std::find(moved.surveys.begin(), moved.surveys.end(), one.survey) != moved.surveys.end();
+    const bool band = moved.passbands.empty() || std::any_of(one.passbands.begin(), one.passbands.end(), [&](auto& id) {
+                        return std::find(moved.passbands.begin(), moved.passbands.end(), id) != moved.passbands.end();
+                      });
+    if (survey && band) out.push_back(one);
+  }
+  return out;
+}
+
+/// The baseline's fits with those in `anew` in place of the old ones.
+Table replaced(const Table& fits, const Table& anew) {
+  const auto renewed = keys_of(anew);
+  const std::set<Key> gone(renewed.begin(), renewed.end());
+  std::vector<bool> keep;
+  for (const Key& key : keys_of(fits)) keep.push_back(!gone.contains(key));
+  const std::array<Table, 2> both = {rows_of(fits, keep), anew};
+  return stacked(both);
+}
+
+Table fits_with(const Baseline& base, const MovedInput& moved, const RunFile& run, const RunInputs& inputs) {
+  if (!moved.refits_light_curves) return base.fits;
+  const auto light_curves = touched(moved, inputs.light_curves);
+  if (light_curves.empty()) return base.fits;
+  Progress silent("", 0);
+  FitOptions options = run.lightcurve;
+  options.curves = false;
+  const LightCurveFits fits =
+      fit_all(light_curves, inputs.supernovae, PreparedTemplate(inputs.trained.model), inputs.catalogue,
+              Extinction(run.milky_way.law, run.milky_way.r_v), options, run.threads, &silent);
+  const Table anew = fits_table(fits.fits);
+  return anew.rows() > 0 ? replaced(base.fits, anew) : base.fits;
+}
+
+/// Rows of the sample in the order of `names`.
+std::vector<StandardisationDatum> data_in_order(const RunFile& run, const Table& sample,
+                                                const std::vector<std::string>& names) {
+  const auto all = standardisation_data(run, sample, std::vector<bool>(sample.rows(), true));
+  std::map<std::string, const StandardisationDatum*> by_name;
+  for (const StandardisationDatum& one : all) by_name[one.name] = &one;
+  std::vector<StandardisationDatum> out;
+  for (const std::string& name : names) {
+    const auto found = by_name.find(name);
+    if (found == by_name.end())
+      throw NoResultError(fmt::format("{} can no longer be fitted with an input moved by 1 sigma.", name));
+    out.push_back(*found->second);
+  }
+  return out;
+}
+
+std::vector<StandardisationDatum> where(const std::vector<StandardisationDatum>& data, const std::vector<bool>& keep) {
+  std::vector<StandardisationDatum> out;
+  for (std::size_t i = 0; i < data.size(); ++i) {
+    if (keep[i]) out.push_back(data[i]);
+  }
+  return out;
+}
+
+std::vector<FlowSupernova> flow_of(const std::vector<StandardisationDatum>& data,
+                                   const StandardisationCoefficients& coefficients, const HostMassOptions& mass) {
+  const auto magnitudes = standardise(data, coefficients, mass);
+  std::vector<FlowSupernova> out(data.size());
+  for (std::size_t i = 0; i < data.size(); ++i) {
+    out[i].name = data[i].name;
+    out[i].z_helio = data[i].z_helio;
+    out[i].z_flow = data[i].z_flow;
+    out[i].m_b_standardised = magnitudes[i].magnitude;
+  }
+  return out;
+}
+
+StandardisationCoefficients fitted(const RunFile& run, const std::vector<StandardisationDatum>& data,
+                                   const std::vector<bool>& used) {
+  return coefficients(fit_standardisation(run, where(data, used)));
+}
+
+Baseline make_baseline(const RunFile& run, const RunInputs& inputs, const Table& fits, const Table& sample,
+                       const Table& magnitudes) {
+  Baseline base{run, inputs, {}, magnitudes.strings("supernova"), {}, {}, {}};
+  const std::set<std::string> wanted(base.names.begin(), base.names.end());
+  std::vector<bool> keep;
+  for (const std::string& name : fits.strings("supernova")) keep.push_back(wanted.contains(name));
+  base.fits = rows_of(fits, keep);
+  std::map<std::string, bool> used;
+  const auto names = sample.strings("supernova");
+  const auto flags = sample.flags("used");
+  for (std::size_t i = 0; i < names.size(); ++i) used[names[i]] = flags[i];
+  for (const std::string& name : base.names) base.used.push_back(used[name]);
+  const auto data =
+      data_in_order(run, make_sample(run, base.fits, inputs.supernovae, inputs.redshifts).sample, base.names);
+  base.coefficients = fitted(run, data, base.used);
+  base.flow = flow_of(data, base.coefficients, run.standardisation.options.host_mass);
+  return base;
+}
+
+SystematicShift shift_of(const Baseline& base, const MovedInput& moved) {
+  RunFile run = base.run;
+  RunInputs inputs = base.inputs;
+  moved.move(run, inputs);
+  const Table fits = fits_with(base, moved, run, inputs);
+  const auto data = data_in_order(run, make_sample(run, fits, inputs.supernovae, inputs.redshifts).sample, base.names);
+  const auto coefficients = base.run.refit_with_systematics ? fitted(run, data, base.used) : base.coefficients;
+  const auto flow = flow_of(data, coefficients, run.standardisation.options.host_mass);
+  SystematicShift out;
+  out.name = moved.name;
+  out.kind = moved.kind;
+  out.size = moved.size;
+  out.unit = moved.unit;
+  out.shift = effective_shift(base.flow, base.run.intercept.options.flow, flow, run.intercept.options.flow);
+  if (moved.scaled_after) out.shift *= moved.size;
+  return out;
+}
+
+}  // namespace
+
+SystematicShifts find_systematic_shifts(const RunFile& run, const Table& fits, const Table& sample,
+                                        const Table& magnitudes) {
+  const RunInputs inputs = read_run_inputs(run, magnitudes.strings("supernova"));
+  const Baseline base = make_baseline(run, inputs, fits, sample, magnitudes);
+  std::vector<MovedInput> all;
+  for (const SystematicInput& input : run.systematics) {
+    for (MovedInput& one : moved_inputs(input, inputs)) all.push_back(std::move(one));
+  }
+  SystematicShifts out{base.names, {}};
+  std::set<std::string> names;
+  Progress progress("Systematics", all.size());
+  for (const MovedInput& one : all) {
+    if (stop_requested()) throw Interrupted("stopped on request");
+    SystematicShift shift = shift_of(base, one);
+    for (int copy = 2; !names.insert(shift.name).second; ++copy) shift.name = fmt::format("{} ({})", one.name, copy);
+    out.shifts.push_back(std::move(shift));
+    progress.advance();
+  }
+  return out;
+}
+
+void write_shifts(const SystematicShifts& shifts, const std::filesystem::path& path) {
+  std::vector<double> values;
+  std::vector<std::string> names, kinds, units;
+  std::vector<double> sizes;
+  for (const SystematicShift& one : shifts.shifts) {
+    values.insert(values.end(), one.shift.begin(), one.shift.end());
+    names.push_back(one.name);
+    kinds.push_back(one.kind);
+    units.push_back(one.unit);
+    sizes.push_back(one.size);
+  }
+  Table systematics;
+  systematics.add_strings("name", names).add_strings("kind", kinds).add_reals("size", sizes);
+  systematics.add_strings("unit_of_size", units);
+  Table supernovae;
+  supernovae.add_strings("supernova", shifts.supernovae);
+  FitsWriter writer;
+  writer.add_image("shifts", {shifts.shifts.size(), shifts.supernovae.size()}, values, "mag",
+                   "of every standardised magnitude for +1 sigma, one row a systematic");
+  writer.add_table(systematics, "systematics");
+  writer.add_table(supernovae, "supernovae");
+  writer.write(path);
+}
+
+SystematicShifts read_shifts(const std::filesystem::path& path) {
+  const FitsReader reader(path);
+  SystematicShifts out;
+  out.supernovae = reader.table("supernovae").strings("supernova");
+  const Table table = reader.table("systematics");
+  const auto names = table.strings("name"), kinds = table.strings("kind"), units = table.strings("unit_of_size");
+  const auto sizes = table.reals("size");
+  const FitsImage image = reader.image("shifts");
+  const std::size_t n = out.supernovae.size();
+  if (image.shape != std::vector<std::size_t>{names.size(), n}) {
+    throw InputError({path.string(), std::nullopt, "shifts"},
+                     fmt::format("the shifts are not {} by {}, as the tables beside them say", names.size(), n),
+                     "make them again");
+  }
+  for (std::size_t k = 0; k < names.size(); ++k) {
+    SystematicShift one;
+    one.name = names[k];
+    one.kind = kinds[k];
+    one.size = sizes[k];
+    one.unit = units[k];
+    one.shift = Eigen::Map<const Eigen::VectorXd>(image.values.data() + k * n, static_cast<Eigen::Index>(n));
+    out.shifts.push_back(std::move(one));
+  }
+  return out;
+}
+
+std::vector<SystematicShift> shifts_for(const SystematicShifts& shifts, const std::vector<std::string>& supernovae) {
+  std::map<std::string, Eigen::Index> place;
+  for (const std::string& name : shifts.supernovae) place.emplace(name, static_cast<Eigen::Index>(place.size()));
+  std::vector<Eigen::Index> order;
+  for (const std::string& name : supernovae) {
+    const auto found = place.find(name);
+    if (found == place.end()) {
+      throw InputError({"systematic-shifts.fits", std::nullopt, "supernovae"},
+                       fmt::format("has no shifts for {}", name), "make the systematics again");
+    }
+    order.push_back(found->second);
+  }
+  std::vector<SystematicShift> out = shifts.shifts;
+  for (SystematicShift& one : out) one.shift = one.shift(order).eval();
+  return out;
+}
+
+}  // namespace thirdrung

@@ -1,0 +1,132 @@
+#include <fmt/format.h>
+
+#include <cmath>
+#include <set>
+
+#include "base/text.h"
+#include "pipeline/blinding.h"
+#include "pipeline/summary.h"
+#include "tables/read_write.h"
+
+namespace thirdrung {
+
+namespace fs = std::filesystem;
+
+namespace {
+
+/// Below so many supernovae the error of a_b itself is poorly known.
+constexpr double few_supernovae = 30;
+/// A chi-square less probable than this, either way, is not chance.
+constexpr double improbable = 0.001;
+
+std::optional<Table> result(const fs::path& folder, const std::string& name) {
+  const fs::path path = folder / (name + ".ecsv");
+  std::error_code ignored;
+  if (!fs::exists(path, ignored)) return std::nullopt;
+  return read_table(path);
+}
+
+std::string counted(std::size_t n, const char* one, const char* many) {
+  return n == 1 ? fmt::format("1 {}", one) : fmt::format("{} {}", n, many);
+}
+
+void of_fits(const fs::path& folder, std::vector<std::string>& out) {
+  if (const auto set_aside = result(folder, "set-aside"); set_aside && set_aside->rows() > 0) {
+    out.push_back(fmt::format("{} set aside before the fit; set-aside.ecsv says why (the first, {}: {}).",
+                              counted(set_aside->rows(), "supernova was", "supernovae were"),
+                              set_aside->strings("supernova").front(), set_aside->strings("reason").front()));
+  }
+  const auto fits = result(folder, "lightcurve-fits");
+  if (!fits) return;
+  const auto trusted = fits->flags("trusted");
+  const auto doubtful = static_cast<std::size_t>(std::count(trusted.begin(), trusted.end(), false));
+  if (doubtful > 0)
+    out.push_back(
+        fmt::format("{} of {} light-curve fits are not trusted; their remarks in lightcurve-fits.ecsv say why.",
+                    doubtful, fits->rows()));
+  const auto left_out = fits->strings("bands_left_out");
+  const auto with_left_out = static_cast<std::size_t>(
+      std::count_if(left_out.begin(), left_out.end(), [](const std::string& text) { return !text.empty(); }));
+  if (with_left_out > 0)
+    out.push_back(fmt::format("{} had passbands left out, mostly for reaching beyond the template.",
+                              counted(with_left_out, "supernova", "supernovae")));
+}
+
+void of_sample(const fs::path& folder, std::vector<std::string>& out) {
+  const auto sample = result(folder, "sample");
+  if (!sample) return;
+  const auto used = sample->flags("used");
+  const auto mass = sample->reals("host_log_mass");
+  const auto agree =
+      sample->has("surveys_agree") ? sample->reals("surveys_agree") : std::vector<double>(used.size(), 1);
+  const auto remarks = sample->strings("remarks"), name = sample->strings("supernova");
+  std::size_t without_mass = 0, outside = 0, in_use = 0;
+  std::vector<std::string> disagree;
+  for (std::size_t i = 0; i < used.size(); ++i) {
+    if (!used[i]) continue;
+    ++in_use;
+    if (std::isnan(mass[i])) ++without_mass;
+    if (remarks[i].find("outside the velocity field") != std::string::npos) ++outside;
+    if (agree[i] < improbable) disagree.push_back(name[i]);
+  }
+  if (without_mass > 0)
+    out.push_back(
+        fmt::format("{} of {} supernovae have no host mass; they count as half above the step.", without_mass, in_use));
+  if (outside > 0)
+    out.push_back(fmt::format("{} of {} supernovae lie outside the velocity field and keep their peculiar velocity.",
+                              outside, in_use));
+  if (!disagree.empty())
+    out.push_back(fmt::format("Surveys disagree, beyond chance, on the light curve of {} (the first: {}).",
+                              counted(disagree.size(), "supernova", "supernovae"), disagree.front()));
+}
+
+void of_standardisation(const fs::path& folder, std::vector<std::string>& out) {
+  const auto table = result(folder, "standardisation");
+  if (!table) return;
+  for (const auto& [key, text] : table->meta()) {
+    if (key.starts_with("remark_")) out.push_back(text);
+  }
+}
+
+void of_intercept(const fs::path& folder, std::vector<std::string>& out) {
+  const auto table = result(folder, "intercept");
+  if (!table) return;
+  const auto names = table->strings("quantity");
+  const auto values = table->reals("value");
+  double supernovae = missing_value, probability = missing_value, chi2 = missing_value, dof = missing_value;
+  for (std::size_t i = 0; i < names.size(); ++i) {
+    if (names[i] == "supernovae") supernovae = values[i];
+    if (names[i] == "probability") probability = values[i];
+    if (names[i] == "chi2") chi2 = values[i];
+    if (names[i] == "dof") dof = values[i];
+  }
+  if (supernovae < few_supernovae)
+    out.push_back(fmt::format("Only {:.0f} supernovae: the error of a_B is itself uncertain by about {:.0f} %.",
+                              supernovae, 100.0 / std::sqrt(2.0 * std::max(supernovae - 1.0, 1.0))));
+  if (probability < improbable || probability > 1 - improbable)
+    out.push_back(fmt::format("The residuals have chi2 = {:.1f} for {:.0f} degrees of freedom, which the errors {}.",
+                              chi2, dof, probability < 0.5 ? "do not explain" : "are too large for"));
+}
+
+void of_unblinding(const RunFile& run, std::vector<std::string>& out) {
+  const auto record = read_unblinding(run.output);
+  if (!record) return;
+  out.push_back(fmt::format("Unblinded on {} by {}{}.", record->when, record->by,
+                            record->run_file_sha256 == sha256_of_text(run.text)
+                                ? ""
+                                : "; the run file has changed since, so this is no longer a blind result"));
+}
+
+}  // namespace
+
+std::vector<std::string> run_warnings(const RunFile& run, const fs::path& folder) {
+  std::vector<std::string> out;
+  of_intercept(folder, out);
+  of_fits(folder, out);
+  of_sample(folder, out);
+  of_standardisation(folder, out);
+  of_unblinding(run, out);
+  return out;
+}
+
+}  // namespace thirdrung
