@@ -57,6 +57,15 @@ Eigen::MatrixXd CovarianceModel::total() const {
   return statistical() + systematic();
 }
 
+Eigen::MatrixXd CovarianceModel::weighting() const {
+  CovarianceModel weighing = *this;
+  std::erase_if(weighing.parts, [](const CovariancePart& part) { return !part.weighs; });
+  for (SystematicShift& shift : weighing.systematics) {
+    if (!shift.weighs) shift.shift.setZero();
+  }
+  return weighing.total();
+}
+
 void check_covariance_model(const CovarianceModel& model) {
   const std::size_t n = model.supernovae.size();
   for (const CovariancePart& part : model.parts) {
@@ -86,13 +95,13 @@ CovarianceModel cut(const CovarianceModel& model, const std::vector<bool>& membe
   CovarianceModel result;
   for (const Eigen::Index i : places) result.supernovae.push_back(model.supernovae[static_cast<std::size_t>(i)]);
   for (const CovariancePart& part : model.parts) {
-    CovariancePart kept{part.name, part.kind, {}, {}};
+    CovariancePart kept{part.name, part.kind, {}, {}, part.weighs};
     if (part.diagonal.size() > 0) kept.diagonal = part.diagonal(places);
     if (part.matrix.size() > 0) kept.matrix = part.matrix(places, places);
     result.parts.push_back(std::move(kept));
   }
   for (const SystematicShift& s : model.systematics) {
-    result.systematics.push_back({s.name, s.kind, s.size, s.unit, s.shift(places)});
+    result.systematics.push_back({s.name, s.kind, s.size, s.unit, s.shift(places), s.weighs});
   }
   result.correlation = model.correlation;
   return result;
@@ -143,7 +152,7 @@ void add_coefficient_shifts(CovarianceModel& model, const Eigen::MatrixXd& shift
   for (Eigen::Index k = 0; k < shifts.cols(); ++k) {
     if (shifts.col(k).cwiseAbs().maxCoeff() == 0.0) continue;  // a coefficient that was held
     model.systematics.push_back(
-        {fmt::format("standardisation coefficients {}", k + 1), "standardisation", 1.0, "sigma", shifts.col(k)});
+        {fmt::format("standardisation coefficients {}", k + 1), "standardisation", 1.0, "sigma", shifts.col(k), false});
   }
 }
 

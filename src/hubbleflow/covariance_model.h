@@ -16,6 +16,7 @@ struct CovariancePart {
   std::string kind = "statistical";
   Eigen::VectorXd diagonal;  ///< Where the part does not correlate supernovae; else empty.
   Eigen::MatrixXd matrix;    ///< Where it does; else empty.
+  bool weighs = true;        ///< False: left out of weighting().
 };
 
 /// One systematic uncertainty: how every standardised magnitude moves when one input moves by its one-sigma size.
@@ -25,6 +26,7 @@ struct SystematicShift {
   double size = 1.0;  ///< One sigma of the input, in `unit`.
   std::string unit;
   Eigen::VectorXd shift;  ///< Of the magnitudes, for +1 sigma [mag].
+  bool weighs = true;     ///< False: left out of weighting().
 };
 
 /// The whole covariance in its parts: C = sum of parts + sum_kl rho_kl Delta_k Delta_l^T.
@@ -37,6 +39,12 @@ struct CovarianceModel {
   Eigen::MatrixXd statistical() const;  ///< Sum of the parts.
   Eigen::MatrixXd systematic() const;   ///< Sum of the outer products.
   Eigen::MatrixXd total() const;        ///< Both; exactly symmetric.
+  /// What least squares should be weighted with: the total without what does not weigh.
+  ///
+  /// The errors of alpha, beta and gamma do not. They shift the magnitudes along the observed s - 1 and c, and weights
+  /// that know of such shifts fit the coefficients anew to the residuals, as an ordinary fit would that ignores the
+  /// errors of s and c: a_B then moves by the dilution of those slopes times the mean of s - 1 and c.
+  Eigen::MatrixXd weighting() const;
 };
 
 /// Throws InputError (naming the part) if a size does not fit the number of supernovae or a value is not finite, or if
@@ -60,7 +68,8 @@ CovarianceModel statistical_model(std::span<const FlowSupernova> supernovae,
                                   std::span<const StandardisedMagnitude> magnitudes, const Expansion& expansion,
                                   double sigma_v, std::span<const double> z_errors = {});
 
-/// Adds the errors of alpha, beta and gamma, as coefficient_shifts() gives them, under the kind "standardisation".
+/// Adds the errors of alpha, beta and gamma, as coefficient_shifts() gives them, under the kind "standardisation"; they
+/// do not weigh.
 void add_coefficient_shifts(CovarianceModel& model, const Eigen::MatrixXd& shifts);
 
 /// Shift of the magnitudes that a changed input amounts to: minus five times the change of the single intercepts. Takes

@@ -75,6 +75,7 @@ void check_flow_sample(const FlowSample& sample) {
     }
   }
   check_covariance(sample.covariance, sample.supernovae);
+  if (sample.weighting.size() > 0) check_covariance(sample.weighting, sample.supernovae);
 }
 
 Eigen::MatrixXd precision_matrix(const Eigen::MatrixXd& covariance, std::span<const FlowSupernova> supernovae) {
@@ -113,6 +114,7 @@ FlowSample cut(const FlowSample& sample, const std::vector<bool>& members) {
   FlowSample result;
   for (const Eigen::Index i : places) result.supernovae.push_back(sample.supernovae[static_cast<std::size_t>(i)]);
   result.covariance = sample.covariance(places, places);
+  if (sample.weighting.size() > 0) result.weighting = sample.weighting(places, places);
   return result;
 }
 

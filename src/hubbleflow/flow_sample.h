@@ -32,6 +32,11 @@ struct FlowSupernova {
 struct FlowSample {
   std::vector<FlowSupernova> supernovae;
   Eigen::MatrixXd covariance;
+  /// What the weights of least squares are made from [mag^2]; empty: the covariance. It leaves out what must count in
+  /// every error but must not be fitted away (CovarianceModel::weighting).
+  Eigen::MatrixXd weighting = {};
+
+  const Eigen::MatrixXd& weighed_by() const { return weighting.size() > 0 ? weighting : covariance; }
 };
 
 /// How magnitudes and redshifts become single-supernova intercepts.
@@ -53,8 +58,8 @@ Eigen::VectorXd single_intercepts(std::span<const FlowSupernova> supernovae, con
 double velocity_response(double z_flow, const Expansion& expansion);
 
 /// Throws InputError unless: every supernova has 0 < z_flow and a finite magnitude, names occur once, the covariance is
-/// square, of the sample's size, finite, symmetric to 1e-8 of its largest element and with positive diagonal. (Positive
-/// definiteness is found when it is inverted; see precision_matrix.)
+/// square, of the sample's size, finite, symmetric to 1e-8 of its largest element and with positive diagonal, and so is
+/// the weighting, if there is one. (Positive definiteness is found when it is inverted; see precision_matrix.)
 void check_flow_sample(const FlowSample& sample);
 
 /// Inverse of a covariance. Throws InputError naming the supernova that weighs most in the offending combination, if it

@@ -9,7 +9,7 @@ namespace thirdrung {
 std::vector<InfluenceRow> influence(const ScanFrame& frame) {
   const std::vector<Eigen::Index> in = places_of(frame.baseline());
   const FlowSample used = cut(frame.sample(), frame.baseline());
-  const Eigen::MatrixXd precision = 25.0 * precision_matrix(used.covariance, used.supernovae);
+  const Eigen::MatrixXd precision = 25.0 * precision_matrix(used.weighed_by(), used.supernovae);
   const Eigen::MatrixXd design = frame.design()(in, Eigen::all);
   const Eigen::VectorXd y = frame.single_intercepts()(in);
   const LeastSquares solution = solve_least_squares(design, y, precision);

@@ -91,7 +91,7 @@ InterceptResult fit_intercept(const FlowSample& sample, const InterceptOptions& 
         fmt::format("only {} supernovae have {} < z_flow < {}, and an intercept needs {}; widen the redshift range.",
                     result.supernovae, options.z_min, options.z_max, options.fewest));
   }
-  const Eigen::MatrixXd precision = 25.0 * precision_matrix(used.covariance, used.supernovae);
+  const Eigen::MatrixXd precision = 25.0 * precision_matrix(used.weighed_by(), used.supernovae);
   InterceptOptions current = options;
   LeastSquares solution;
   for (int round = 0; round < 20; ++round) {
@@ -100,6 +100,9 @@ InterceptResult fit_intercept(const FlowSample& sample, const InterceptOptions& 
     if (!options.fit_q0) break;
     current.flow.expansion = with_q0(current.flow.expansion, q0_of(current.flow.expansion) + solution.theta[1]);
     if (std::abs(solution.theta[1]) < 1e-9) break;
+  }
+  if (used.weighting.size() > 0) {
+    solution.covariance = 0.04 * solution.weights * used.covariance * solution.weights.transpose();
   }
   result.a_b = solution.theta[0];
   result.error = std::sqrt(solution.covariance(0, 0));

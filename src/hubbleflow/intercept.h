@@ -51,8 +51,9 @@ struct InterceptResult {
 
 /// a_B by generalised least squares with the sample's full covariance over the supernovae in the redshift range.
 ///
-/// a_B = 1^T P y / 1^T P 1 with y the single intercepts and P the inverse of 0.04 times the covariance; with q0 or a
-/// dipole the same with their columns, q0 iterated to convergence. Throws InputError for an unsound sample
+/// a_B = 1^T P y / 1^T P 1 with y the single intercepts and P the inverse of 0.04 times the sample's weighting; with q0
+/// or a dipole the same with their columns, q0 iterated to convergence. Errors are those of these linear estimates
+/// under the whole covariance; chi2 is that of P. Throws InputError for an unsound sample
 /// (check_flow_sample) or a covariance that is not positive definite; NoResultError if fewer than `fewest` supernovae
 /// are in the range; InputError for a dipole if a supernova has no position.
 InterceptResult fit_intercept(const FlowSample& sample, const InterceptOptions& options = {});

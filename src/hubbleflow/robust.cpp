@@ -73,7 +73,7 @@ RobustResult student_t(const ScanFrame& frame, const Eigen::VectorXd& own_varian
   const std::vector<Eigen::Index> in = places_of(frame.baseline());
   const auto n = static_cast<Eigen::Index>(in.size());
   const Eigen::VectorXd own = 0.04 * own_variance(in);
-  Eigen::MatrixXd common = frame.covariance()(in, in);
+  Eigen::MatrixXd common = frame.weighting()(in, in);
   common.diagonal() -= own;
   const bool independent = common.cwiseAbs().maxCoeff() < 1e-12 * own.maxCoeff();
   const Eigen::MatrixXd design = frame.design()(in, Eigen::all);

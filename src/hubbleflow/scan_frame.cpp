@@ -46,7 +46,8 @@ ScanFrame::ScanFrame(FlowSample sample, const InterceptOptions& options)
   error_ = baseline.error;
   y_ = thirdrung::single_intercepts(sample_.supernovae, options_.flow);
   covariance_ = 0.04 * sample_.covariance;
-  precision_ = 25.0 * precision_matrix(sample_.covariance, sample_.supernovae);
+  weighting_ = 0.04 * sample_.weighed_by();
+  precision_ = 25.0 * precision_matrix(sample_.weighed_by(), sample_.supernovae);
   design_ = intercept_design(sample_.supernovae, options_);
   baseline_weights_ = Eigen::VectorXd::Zero(y_.size());
   baseline_weights_(places_of(baseline_)) = baseline.weights;
@@ -58,9 +59,9 @@ Eigen::VectorXd ScanFrame::weights(const std::vector<bool>& members) const {
   others.flip();
   const std::vector<Eigen::Index> out = places_of(others);
   const Eigen::MatrixXd a = design_(in, Eigen::all);
-  Eigen::MatrixXd pa;  // (C_in,in)^-1 A
+  Eigen::MatrixXd pa;  // (weighting_in,in)^-1 A
   if (in.size() <= out.size()) {
-    pa = Eigen::LLT<Eigen::MatrixXd>(covariance_(in, in)).solve(a);
+    pa = Eigen::LLT<Eigen::MatrixXd>(weighting_(in, in)).solve(a);
   } else {
     Eigen::MatrixXd padded = Eigen::MatrixXd::Zero(size(), design_.cols());
     padded(in, Eigen::all) = a;

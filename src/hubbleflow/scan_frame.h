@@ -26,7 +26,8 @@ class ScanFrame {
   Eigen::Index size() const { return y_.size(); }
   const Eigen::VectorXd& single_intercepts() const { return y_; }
   const Eigen::MatrixXd& covariance() const { return covariance_; }  ///< Of the single intercepts.
-  const Eigen::MatrixXd& precision() const { return precision_; }    ///< Its inverse.
+  const Eigen::MatrixXd& weighting() const { return weighting_; }    ///< What weights are made from; often the same.
+  const Eigen::MatrixXd& precision() const { return precision_; }    ///< Inverse of the weighting.
   const Eigen::MatrixXd& design() const { return design_; }
   const std::vector<bool>& baseline() const { return baseline_; }
   const Eigen::VectorXd& baseline_weights() const { return baseline_weights_; }
@@ -42,7 +43,7 @@ class ScanFrame {
  private:
   FlowSample sample_;
   InterceptOptions options_;
-  Eigen::MatrixXd covariance_, precision_, design_;
+  Eigen::MatrixXd covariance_, weighting_, precision_, design_;
   Eigen::VectorXd y_, baseline_weights_;
   std::vector<bool> baseline_;
   double a_b_ = 0.0, error_ = 0.0;

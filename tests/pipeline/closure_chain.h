@@ -82,13 +82,11 @@ inline InterceptResult intercept_of(std::span<const StandardisationDatum> all, d
     sample.supernovae.push_back(one);
   }
   variance += velocity_scatter_part(sample.supernovae, Expansion(), sigma_v).diagonal;
-  sample.covariance = variance.asDiagonal();
-  InterceptResult out = fit_intercept(sample, intercept);
-  // The errors of alpha, beta and gamma count in the error, not in the weights: weights that know of them fit the
-  // coefficients anew to the observed s and c, whose own errors then drag them down, and a_B with them.
+  // The errors of alpha, beta and gamma count in the error, not in the weights: see CovarianceModel::weighting.
   const Eigen::MatrixXd common = coefficient_shifts(data, result, options.host_mass);
-  out.error = std::hypot(out.error, 0.2 * (common.transpose() * out.weights).norm());
-  return out;
+  sample.weighting = variance.asDiagonal();
+  sample.covariance = sample.weighting + common * common.transpose();
+  return fit_intercept(sample, intercept);
 }
 
 /// Mean and width of the pulls of a_B, and its mean error.
