@@ -49,6 +49,8 @@ CovariancePart coefficients_part(const Magnitudes& magnitudes, const Coefficient
   }
   CovariancePart part;
   part.name = "standardisation coefficients";
+  part.weighs = false;  // Weights that knew of it would fit the coefficients anew, to the residuals.
+  part.weighs = false;
   part.matrix = slope * coefficients.covariance * slope.transpose();
   part.matrix = (0.5 * (part.matrix + part.matrix.transpose())).eval();
   return part;
@@ -117,6 +119,7 @@ void write_covariance(const CovarianceModel& model, const std::filesystem::path&
   FitsWriter writer;
   add_matrix(writer, "total", model.total(), "mag2", "of the standardised magnitudes, all parts");
   add_matrix(writer, "statistical", model.statistical(), "mag2", "sum of the statistical parts");
+  add_matrix(writer, "weighting", model.weighting(), "mag2", "what the weights of a_b are made from");
   add_matrix(writer, "systematic", model.systematic(), "mag2", "sum over the systematics");
   writer.add_table(names_table("supernova", model.supernovae), "supernovae");
   const auto n = static_cast<Eigen::Index>(model.supernovae.size());

@@ -26,7 +26,8 @@ CoefficientCovariance read_coefficient_covariance(const std::filesystem::path& p
 CovarianceModel make_covariance(const RunFile& run, const Magnitudes& magnitudes,
                                 const CoefficientCovariance& coefficients, std::vector<SystematicShift> systematics);
 
-/// Writes `covariance.fits`: images "total", "statistical", "systematic", one for each statistical part that correlates
+/// Writes `covariance.fits`: images "total", "statistical", "systematic", "weighting" (the total
+/// without the errors of alpha, beta and gamma), one for each statistical part that correlates
 /// supernovae, "diagonals" (parts that do not), "shifts" (one row a systematic), and tables that name their rows.
 void write_covariance(const CovarianceModel& model, const std::filesystem::path& path);
 

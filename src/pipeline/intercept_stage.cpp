@@ -167,7 +167,7 @@ Table derivatives_table(const std::vector<InputDerivative>& rows) {
 InterceptTables fit_intercept_of(const RunFile& run, const Magnitudes& magnitudes, const CovarianceModel& model) {
   const InterceptOptions& options = run.intercept.options;
   const Eigen::MatrixXd covariance = model.total();
-  const FlowSample flow{magnitudes.supernovae, covariance};
+  const FlowSample flow{magnitudes.supernovae, covariance, model.weighting()};
   const InterceptResult result = fit_intercept(flow, options);
   const Budget budget = make_budget(cut(model, result.used), result.weights);
   const ScanFrame frame(flow, options);

@@ -16,8 +16,20 @@ bool holds(const std::vector<std::string>& list, const std::string& word) {
   return std::find(list.begin(), list.end(), word) != list.end();
 }
 
-bool in_scope(const SystematicInput& input, const LightCurve& light_curve) {
-  return input.surveys.empty() || holds(input.surveys, light_curve.survey);
+/// For a light curve or a supernova.
+template <typename Observed>
+bool in_scope(const SystematicInput& input, const Observed& one) {
+  return input.surveys.empty() || holds(input.surveys, one.survey);
+}
+
+/// Does something to every supernova in scope.
+std::function<void(RunFile&, RunInputs&)> for_supernovae(const SystematicInput& input,
+                                                         std::function<void(Supernova&)> change) {
+  return [input, change = std::move(change)](RunFile&, RunInputs& all) {
+    for (Supernova& one : all.supernovae) {
+      if (in_scope(input, one)) change(one);
+    }
+  };
 }
 
 /// Passbands that the light curves in scope were observed in, in order of name.
@@ -159,13 +171,11 @@ Single single_input(const SystematicInput& input) {
   const double size = input.size.value_or(1.0);
   switch (input.kind) {
     case SystematicKind::milky_way_scale:
-      return {"Milky Way reddening scale", "Milky Way", "of E(B-V)", true, [size](RunFile&, RunInputs& all) {
-                for (Supernova& one : all.supernovae) one.mw_ebv *= 1.0 + size;
-              }};
+      return {"Milky Way reddening scale", "Milky Way", "of E(B-V)", true,
+              for_supernovae(input, [size](Supernova& one) { one.mw_ebv *= 1.0 + size; })};
     case SystematicKind::milky_way_zero:
-      return {"Milky Way reddening zero", "Milky Way", "mag", true, [size](RunFile&, RunInputs& all) {
-                for (Supernova& one : all.supernovae) one.mw_ebv += size;
-              }};
+      return {"Milky Way reddening zero", "Milky Way", "mag", true,
+              for_supernovae(input, [size](Supernova& one) { one.mw_ebv += size; })};
     case SystematicKind::dust_law:
       return {"Milky Way dust law", "Milky Way", "of the other law", true, [](RunFile& run, RunInputs&) {
                 run.milky_way.law =
@@ -177,8 +187,11 @@ Single single_input(const SystematicInput& input) {
                 all.trained = read_template(input.file.path);
               }};
     case SystematicKind::redshift:
-      return {"redshift offset", "redshift", "in z", false,
-              [size](RunFile&, RunInputs& all) { all.redshifts.z_offset += size; }};
+      // Light curves too: the redshift sets their K-correction and their clock.
+      return {"redshift offset", "redshift", "in z", true, for_supernovae(input, [size](Supernova& one) {
+                one.z_helio += size;
+                one.z_group += size;
+              })};
     case SystematicKind::velocity_strength:
       return {"velocity field strength", "velocity", "of the field", false, [size](RunFile& run, RunInputs& all) {
                 all.redshifts.column_scale *= 1.0 + size;

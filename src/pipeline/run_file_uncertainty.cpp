@@ -32,6 +32,21 @@ bool has_passbands(SystematicKind kind) {
   return kind == SystematicKind::zero_point || kind == SystematicKind::wavelength;
 }
 
+bool has_surveys(SystematicKind kind) {
+  switch (kind) {
+    case SystematicKind::zero_point:
+    case SystematicKind::wavelength:
+    case SystematicKind::milky_way_scale:
+    case SystematicKind::milky_way_zero:
+    case SystematicKind::dust_law:
+    case SystematicKind::template_file:
+    case SystematicKind::redshift:
+      return true;
+    default:
+      return false;
+  }
+}
+
 /// Size of kinds that have a usual one; nothing where the passband catalogue gives it.
 std::optional<double> usual_size(SystematicKind kind) {
   switch (kind) {
@@ -111,6 +126,11 @@ void read_systematic_section(RunSection section, RunFile& run) {
   if (!has_passbands(input.kind) && (!input.passbands.empty() || section.has("together"))) {
     throw InputError(section.place(input.passbands.empty() ? "together" : "passbands"),
                      fmt::format("a systematic of the kind {} has no passbands", name_of(input.kind)), "leave it out");
+  }
+  if (!has_surveys(input.kind) && !input.surveys.empty()) {
+    throw InputError(section.place("surveys"),
+                     fmt::format("a systematic of the kind {} is one for all surveys", name_of(input.kind)),
+                     "leave surveys out");
   }
   if (input.kind == SystematicKind::template_file && !input.file.given()) {
     throw InputError(section.place("file"), "the kind template_file needs another template", "give file");

@@ -130,7 +130,8 @@ ScanTables scan_choices(const RunFile& run, const Magnitudes& magnitudes, const 
                         const Table& sample, const StandardisationCoefficients& coefficients) {
   const InterceptOptions& options = run.intercept.options;
   const Magnitudes good = some_of(magnitudes, magnitudes.in_sample);
-  const ScanFrame frame({good.supernovae, cut(model, magnitudes.in_sample).total()}, options);
+  const CovarianceModel inner = cut(model, magnitudes.in_sample);
+  const ScanFrame frame({good.supernovae, inner.total(), inner.weighting()}, options);
   std::vector<ScanRow> rows, grid;
   for (const ScanAxis& axis : run.scans.axes) {
     ScanAxis seeded = axis;
@@ -143,7 +144,7 @@ ScanTables scan_choices(const RunFile& run, const Magnitudes& magnitudes, const 
     for (ScanRow& row : correction_rows(run, frame, sample, coefficients)) rows.push_back(std::move(row));
   }
   if (run.scans.cuts) {
-    const ScanFrame wide({magnitudes.supernovae, model.total()}, options);
+    const ScanFrame wide({magnitudes.supernovae, model.total(), model.weighting()}, options);
     std::vector<bool> baseline = in_redshift_range(magnitudes.supernovae, options.z_min, options.z_max);
     for (std::size_t i = 0; i < baseline.size(); ++i) baseline[i] = baseline[i] && magnitudes.in_sample[i];
     for (ScanRow& row : cut_rows(run, wide, baseline, sample)) rows.push_back(std::move(row));

@@ -2,7 +2,9 @@
 
 #include <fmt/format.h>
 
+#include <Eigen/SVD>
 #include <algorithm>
+#include <array>
 #include <map>
 #include <set>
 
@@ -157,6 +159,37 @@ SystematicShift shift_of(const Baseline& base, const MovedInput& moved) {
   return out;
 }
 
+/// Shifts named `stem` and a number, of which there may be hundreds, in their principal directions: the sum of their
+/// outer products stays the same but for a part in 1e6 of its trace.
+void condense(std::vector<SystematicShift>& shifts, const std::string& stem) {
+  std::vector<SystematicShift> others, members;
+  for (SystematicShift& one : shifts) (one.name.starts_with(stem) ? members : others).push_back(std::move(one));
+  shifts = std::move(others);
+  if (members.empty()) return;
+  Eigen::MatrixXd matrix(members.front().shift.size(), static_cast<Eigen::Index>(members.size()));
+  for (std::size_t k = 0; k < members.size(); ++k) matrix.col(static_cast<Eigen::Index>(k)) = members[k].shift;
+  const Eigen::BDCSVD<Eigen::MatrixXd> principal(matrix, Eigen::ComputeThinU);
+  const Eigen::VectorXd size = principal.singularValues();
+  double left = size.squaredNorm();
+  const double enough = 1e-6 * left;
+  for (Eigen::Index k = 0; k < size.size() && left > enough; ++k) {
+    SystematicShift one = members.front();
+    one.name = fmt::format("template direction {}", k + 1);
+    one.shift = size(k) * principal.matrixU().col(k);
+    if (one.shift.sum() < 0) one.shift = -one.shift;
+    shifts.push_back(std::move(one));
+    left -= size(k) * size(k);
+  }
+}
+
+void make_names_unique(std::vector<SystematicShift>& shifts) {
+  std::set<std::string> names;
+  for (SystematicShift& one : shifts) {
+    const std::string name = one.name;
+    for (int copy = 2; !names.insert(one.name).second; ++copy) one.name = fmt::format("{} ({})", name, copy);
+  }
+}
+
 }  // namespace
 
 SystematicShifts find_systematic_shifts(const RunFile& run, const Table& fits, const Table& sample,
@@ -168,15 +201,14 @@ SystematicShifts find_systematic_shifts(const RunFile& run, const Table& fits, c
     for (MovedInput& one : moved_inputs(input, inputs)) all.push_back(std::move(one));
   }
   SystematicShifts out{base.names, {}};
-  std::set<std::string> names;
   Progress progress("Systematics", all.size());
   for (const MovedInput& one : all) {
     if (stop_requested()) throw Interrupted("stopped on request");
-    SystematicShift shift = shift_of(base, one);
-    for (int copy = 2; !names.insert(shift.name).second; ++copy) shift.name = fmt::format("{} ({})", one.name, copy);
-    out.shifts.push_back(std::move(shift));
+    out.shifts.push_back(shift_of(base, one));
     progress.advance();
   }
+  condense(out.shifts, "template mode");
+  make_names_unique(out.shifts);
   return out;
 }
 

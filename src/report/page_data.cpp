@@ -110,7 +110,7 @@ json answer_data(const Answer& answer) {
 
 json run_data(const RunTables& run) {
   json cuts = json::array(), inputs = json::array();
-  for (const CutCount& cut : run.summary.cuts)
+  for (const CutLine& cut : run.summary.cuts)
     cuts.push_back({cut.rule, cut.removed_alone, cut.removed_in_order, cut.left});
   for (const auto& [file, sha256] : run.summary.inputs) inputs.push_back({file, sha256});
   return {{"cuts", cuts}, {"inputs", inputs}, {"version", run.summary.version}, {"files", run.summary.files}};

@@ -18,7 +18,7 @@ struct Measured {
 };
 
 /// One quality rule and how many supernovae it removed.
-struct CutCount {
+struct CutLine {
   std::string rule;
   long long removed_alone = 0;     ///< How many it would remove if it were the only rule.
   long long removed_in_order = 0;  ///< How many of those that the rules before it had left.
@@ -38,7 +38,7 @@ struct RunSummary {
   double z_max = std::numeric_limits<double>::quiet_NaN();
   /// alpha, beta, gamma, sigma_int, s_mean, s_width, c_mean, c_width, where given.
   std::map<std::string, Measured> parameters;
-  std::vector<CutCount> cuts;
+  std::vector<CutLine> cuts;
   std::vector<std::string> warnings;
   std::vector<std::pair<std::string, std::string>> inputs;  ///< File and its SHA-256.
   std::string version;

@@ -61,10 +61,10 @@ void wrap(const std::string& text, const std::string& mark, std::size_t width, s
 void add_cuts(const RunSummary& summary, std::string& out) {
   if (summary.cuts.empty()) return;
   std::size_t widest = 4;
-  for (const CutCount& cut : summary.cuts) widest = std::max(widest, columns(harmless(cut.rule)));
+  for (const CutLine& cut : summary.cuts) widest = std::max(widest, columns(harmless(cut.rule)));
   widest = std::min<std::size_t>(widest, 60);
   out += fmt::format("\n{}   alone  removed   left\n", padded("  cuts, in order", widest + 2));
-  for (const CutCount& cut : summary.cuts) {
+  for (const CutLine& cut : summary.cuts) {
     out += fmt::format("  {}  {:>6}  {:>7}  {:>5}\n", padded(harmless(cut.rule), widest), cut.removed_alone,
                        cut.removed_in_order, cut.left);
   }
