@@ -129,20 +129,24 @@ SimulatedSample simulate(const SimulationOptions& options, const SpectralTemplat
   });
 
   const std::vector<Row> rows = rows_of(options, slots, out.truths);
-  out.light_curves.resize(rows.size());
+  std::vector<LightCurve> light_curves(rows.size());
   parallel_for(rows.size(), options.threads, [&](std::size_t r) {
     const Slot& slot = slots[rows[r].slot];
     const std::size_t survey = rows[r].survey;
     if (slot.survey == survey) {
-      out.light_curves[r] = std::move(own[rows[r].slot]);
+      light_curves[r] = std::move(own[rows[r].slot]);
     } else {
       RandomStream noise(options.seed, {photometry_draws, survey, slot.survey, slot.number, most_attempts});
-      out.light_curves[r] =
+      light_curves[r] =
           observe(options, options.surveys[survey], passbands[survey], out.truths[rows[r].slot], model, dust, noise);
     }
   });
-  for (const Row& row : rows) {
+  for (std::size_t r = 0; r < rows.size(); ++r) {
+    const Row& row = rows[r];
+    // A shared supernova may fall outside this survey's seasons.
+    if (light_curves[r].epochs.empty()) continue;
     out.supernovae.push_back(table_row(options, row.survey, slots[row.slot], out.truths[row.slot]));
+    out.light_curves.push_back(std::move(light_curves[r]));
   }
   return out;
 }
