@@ -5,6 +5,7 @@
 #include <Eigen/SVD>
 #include <algorithm>
 #include <array>
+#include <cmath>
 #include <map>
 #include <set>
 
@@ -56,13 +57,25 @@ std::vector<LightCurve> touched(const MovedInput& moved, const std::vector<Light
   return out;
 }
 
-/// The baseline's fits with those in `anew` in place of the old ones.
+/// A fit that moves farther than this in t_0 has jumped to another solution, which is not what a small change of an
+/// input does [d].
+constexpr double jump = 1.0;
+
+/// The baseline's fits with those in `anew` in place of the old ones, but for those that jumped.
 Table replaced(const Table& fits, const Table& anew) {
-  const auto renewed = keys_of(anew);
-  const std::set<Key> gone(renewed.begin(), renewed.end());
-  std::vector<bool> keep;
-  for (const Key& key : keys_of(fits)) keep.push_back(!gone.contains(key));
-  const std::array<Table, 2> both = {rows_of(fits, keep), anew};
+  std::map<Key, double> old_t_0;
+  const auto old_keys = keys_of(fits), new_keys = keys_of(anew);
+  const auto old_dates = fits.reals("t_0"), new_dates = anew.reals("t_0");
+  for (std::size_t i = 0; i < old_keys.size(); ++i) old_t_0[old_keys[i]] = old_dates[i];
+  std::vector<bool> take, keep;
+  std::set<Key> gone;
+  for (std::size_t i = 0; i < new_keys.size(); ++i) {
+    const auto old = old_t_0.find(new_keys[i]);
+    take.push_back(old != old_t_0.end() && std::abs(new_dates[i] - old->second) < jump);
+    if (take.back()) gone.insert(new_keys[i]);
+  }
+  for (const Key& key : old_keys) keep.push_back(!gone.contains(key));
+  const std::array<Table, 2> both = {rows_of(fits, keep), rows_of(anew, take)};
   return stacked(both);
 }
 
@@ -160,7 +173,7 @@ SystematicShift shift_of(const Baseline& base, const MovedInput& moved) {
 }
 
 /// Shifts named `stem` and a number, of which there may be hundreds, in their principal directions: the sum of their
-/// outer products stays the same but for a part in 1e6 of its trace.
+/// outer products stays the same but for a part in 1e4 of its trace.
 void condense(std::vector<SystematicShift>& shifts, const std::string& stem) {
   std::vector<SystematicShift> others, members;
   for (SystematicShift& one : shifts) (one.name.starts_with(stem) ? members : others).push_back(std::move(one));
@@ -171,7 +184,7 @@ void condense(std::vector<SystematicShift>& shifts, const std::string& stem) {
   const Eigen::BDCSVD<Eigen::MatrixXd> principal(matrix, Eigen::ComputeThinU);
   const Eigen::VectorXd size = principal.singularValues();
   double left = size.squaredNorm();
-  const double enough = 1e-6 * left;
+  const double enough = 1e-4 * left;
   for (Eigen::Index k = 0; k < size.size() && left > enough; ++k) {
     SystematicShift one = members.front();
     one.name = fmt::format("template direction {}", k + 1);
