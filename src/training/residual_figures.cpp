@@ -124,9 +124,10 @@ SvgPlot residual_map_figure(std::span<const HeldOutPoint> points) {
   SvgPlot plot(760, 420);
   const std::vector<double> phases = phase_bin_edges();
   const std::vector<double> waves = {2700, 3200, 3600, 4000, 4400, 4800, 5200, 5700, 6300, 7000, 7800, 8600, 9600};
-  plot.panel({62, 34, 660, 330}, {waves.front(), waves.back(), "rest-frame wavelength of the band [Å]", {}},
-             {-15, 45, "phase [d]", {}},
-             "Mean held-out pull: blue fainter than −0.3, orange brighter than +0.3; number: χ² per degree of freedom");
+  plot.panel(
+      {62, 34, 660, 330}, {waves.front(), waves.back(), "rest-frame wavelength of the band [Å]", {}},
+      {-15, 45, "phase [d]", {}},
+      "Mean held-out pull: blue, data fainter (to −0.3); orange, brighter (to +0.3). Number: χ² per degree of freedom");
   for (std::size_t i = 0; i + 1 < waves.size(); ++i) {
     const auto column = in_zone(points, {"", waves[i], waves[i + 1]});
     for (std::size_t k = 0; k + 1 < phases.size(); ++k) {

@@ -95,7 +95,7 @@ void SvgPlot::raw_text(double x, double y, const std::string& words, const std::
 void SvgPlot::ticks(bool horizontal) {
   Axis& axis = horizontal ? x_ : y_;
   const double length = horizontal ? place_.width : place_.height;
-  if (axis.ticks.empty()) axis.ticks = round_ticks(axis.from, axis.to, std::max(2.0, length / (horizontal ? 55 : 36)));
+  if (axis.ticks.empty()) axis.ticks = round_ticks(axis.from, axis.to, std::max(3.0, length / (horizontal ? 42 : 32)));
   const double bottom = place_.top + place_.height;
   for (const auto& [value, words] : axis.ticks) {
     if (horizontal) {

@@ -47,13 +47,13 @@ struct Variant {
 void light_curve_row(SvgPlot& plot, const TrainingResult& result, double top, const std::vector<Variant>& variants,
                      bool titled) {
   const SpectralTemplate& model = result.state.model;
-  const Values phase = steps(-15, 50, 1);
-  constexpr double wide = 172, high = 215, gap = 18;
+  const Values phase = steps(-15, 45, 1);
+  constexpr double wide = 164, high = 215, gap = 28;
   double left = 58;
   for (const RestBand& band : rest_bands_ubvri(model)) {
     const bool first = left < 60;
-    plot.panel({left, top, wide, high}, {-18, 52, titled ? "" : "phase [d]", {}},
-               {4.2, -0.9, first ? "magnitude − fiducial at B maximum" : "", {}}, titled ? band.name : "");
+    plot.panel({left, top, wide, high}, {-18, 48, titled ? "" : "phase [d]", {}},
+               {4.2, -1.6, first ? "magnitude − fiducial at B maximum" : "", {}}, titled ? band.name : "");
     const double zero = magnitude_in(band, model, 0);
     Values low, up;
     for (const double p : phase) {
@@ -63,14 +63,14 @@ void light_curve_row(SvgPlot& plot, const TrainingResult& result, double top, co
       up.push_back(value - error);
     }
     plot.band(phase, low, up, SvgPlot::ink);
-    double label_at = -0.55;
+    double label_at = -1.3;
     for (const Variant& variant : variants) {
       Values y;
       for (const double p : phase) y.push_back(magnitude_in(band, model, p, variant.s, variant.c) - zero);
       const bool fiducial = variant.s == 1 && variant.c == 0;
       plot.line(phase, y, variant.colour, fiducial ? 1.8 : 1.2);
-      if (left > 58 + 3 * (wide + gap)) plot.text(50, label_at, variant.label, variant.colour, "end", 10.5);
-      label_at += 0.3;
+      if (first) plot.text(47, label_at, variant.label, variant.colour, "end", 10.5);
+      label_at += 0.34;
     }
     left += wide + gap;
   }
@@ -147,7 +147,13 @@ SvgPlot spectra_figure(const TrainingResult& result) {
     const std::string colour = i == 2 ? SvgPlot::blue : SvgPlot::ink;
     plot.band(waves, low, high, colour);
     plot.line(waves, y, colour, 1.2);
-    plot.text(waves.back() + 90, y.back() - 0.1, fmt::format("{:+.0f} d", q), colour);
+    plot.text(waves.back() + 90, y.back() - 0.1,
+              fmt::format("{}{:.0f} d",
+                          q < 0   ? "−"
+                          : q > 0 ? "+"
+                                  : "",
+                          std::abs(q)),
+              colour);
   }
   for (const double limit : {model.wavelength_min, model.wavelength_max}) {
     plot.line({limit, limit}, {-30, 10}, SvgPlot::muted, 0.8, true);

@@ -42,7 +42,9 @@ std::string chi2_sentence(std::span<const ResidualBin> bins, const std::string& 
 }
 
 std::string figure(const std::string& file, const std::string& caption) {
-  return fmt::format("![{}]({}.svg)\n\n*{}*\n\n", caption, file, caption);
+  std::string alternative = file;
+  std::replace(alternative.begin(), alternative.end(), '-', ' ');
+  return fmt::format("![{}]({}.svg)\n\n*{}*\n\n", alternative, file, caption);
 }
 
 std::string summary_text(const TrainingResult& result) {
@@ -126,9 +128,9 @@ std::string residual_text(std::span<const HeldOutPoint> points) {
 std::string offsets_text(std::span<const ZeroPointOffset> offsets) {
   std::string out =
       "Shift to be added to the tabulated magnitudes that would fit best, all passbands together, the template held. A "
-      "shift "
-      "common to a survey goes into m_B and a trend with wavelength into c: there a prior of 0.1 mag about zero "
-      "decides.\n\n";
+      "shift common to a survey goes into m_B and a trend with wavelength into c: there a prior of 0.1 mag about zero "
+      "decides, and these two directions make up most of the errors given. Shifts of one passband against its "
+      "neighbours show better in the held-out residuals.\n\n";
   out += figure("zero-points", "Zero-point offsets that the light curves would prefer.");
   out += "| survey | passband | offset [mmag] | supernovae |\n|---|---|---:|---:|\n";
   std::string beyond;
@@ -198,7 +200,7 @@ std::string training_report_text(const TrainingResult& result, std::span<const L
     out += "## Cross-validation\n\n";
     out += figure("cross-validation",
                   "−ln of the predictive likelihood of held-out supernovae above the best, against the strength of the "
-                  "smoothing. Blue: was an improvement when tried; grey: was not; dashed: chosen.");
+                  "smoothing. Blue: an improvement of more than 0.5 when tried; grey: not; dashed: chosen.");
   }
   if (!result.offsets.empty()) out += "## Zero points\n\n" + offsets_text(result.offsets);
   out += "## Left out\n\n" + left_out_text(result.selection.left_out);
