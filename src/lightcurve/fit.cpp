@@ -145,7 +145,8 @@ void remark_on(const Problem& problem, const Solution& solution, bool reselected
            error[3] < options.largest_c_error),
          Remark::weakly_determined);
   add_if(fit.first_phase > options.late_start, Remark::starts_late);
-  add_if(fit.fit_probability < options.improbable, Remark::improbable);
+  add_if(fit.fit_probability < options.improbable && fit.chi2 > options.impossible_chi2_per_dof * fit.dof,
+         Remark::improbable);
   add_if(fit.first_phase > 0 || fit.last_phase < 0, Remark::t_0_outside_data);
   add_if(fit.mistrusted_epochs() > 0, Remark::epochs_mistrusted);
   add_if(!fit.bands_left_out.empty(), Remark::bands_left_out);

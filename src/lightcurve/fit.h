@@ -40,8 +40,12 @@ struct FitOptions {
   std::optional<Prior> s_prior;      ///< None by default.
   std::optional<Prior> c_prior;
 
-  double late_start = 5;         ///< First phase beyond which a fit is called late [d].
-  double improbable = 1e-6;      ///< fit_probability below which χ² is called impossible.
+  double late_start = 5;  ///< First phase beyond which a fit is called late [d].
+  /// χ² is called impossible where fit_probability is below the first and χ² per degree of freedom above the second:
+  /// the template's scatter is an average over supernovae, and a long light curve of an odd one can exceed it in
+  /// probability without being far off.
+  double improbable = 1e-6;
+  double impossible_chi2_per_dof = 3;
   double competing_chi2 = 6;     ///< A second solution within this of the best, in −2 ln L, competes.
   double largest_t_0_error = 3;  ///< Errors beyond which a fit is weakly determined [d],
   double largest_s_error = 0.3;

@@ -112,16 +112,18 @@ void read_surveys(const toml::table& root, const std::string& file, TrainingFile
   for (const toml::node& node : *list) {
     if (!node.is_table()) throw InputError({file, {}, "survey"}, "is not a list of sections", "write [[survey]]");
     RunSection section(*node.as_table(), file, "[[survey]]");
-    TrainingFile::Survey survey{section.text("name"), section.path("photometry"), section.path("supernovae")};
+    TrainingFile::Survey survey{section.text("name"), section.path("photometry"), section.path("supernovae"),
+                                section.flag("check", false)};
     section.done();
     out.surveys.push_back(std::move(survey));
   }
 }
 
-std::vector<TrainingCandidate> read_candidates(const TrainingFile& file, const PassbandCatalogue& catalogue,
+std::vector<TrainingCandidate> read_candidates(const TrainingFile& file, bool check, const PassbandCatalogue& catalogue,
                                                std::vector<SetAside>& set_aside) {
   std::vector<TrainingCandidate> out;
   for (const TrainingFile::Survey& survey : file.surveys) {
+    if (survey.check != check) continue;
     SupernovaList list = read_supernovae(read_table(survey.supernovae.path), survey.name);
     Photometry photometry = read_photometry(survey.photometry.path, catalogue, survey.name);
     set_aside.insert(set_aside.end(), list.set_aside.begin(), list.set_aside.end());
@@ -136,7 +138,8 @@ std::vector<TrainingCandidate> read_candidates(const TrainingFile& file, const P
       }
     }
   }
-  if (out.empty()) throw NoResultError("No supernova has both photometry and a row in a table of supernovae.");
+  if (out.empty() && !check)
+    throw NoResultError("No supernova has both photometry and a row in a table of supernovae.");
   return out;
 }
 
@@ -217,7 +220,7 @@ TrainingResult train_from_file(const TrainingFile& file, const TrainingOutput& o
   if (file.standard_star.given()) star = read_spectrum(read_table(file.standard_star.path));
   const PassbandCatalogue catalogue = PassbandCatalogue::read(file.catalogue.path, star);
   std::vector<SetAside> set_aside;
-  const std::vector<TrainingCandidate> candidates = read_candidates(file, catalogue, set_aside);
+  const std::vector<TrainingCandidate> candidates = read_candidates(file, false, catalogue, set_aside);
   std::vector<std::string> spectra_left_out;
   std::vector<TrainingSpectrum> spectra;
   if (file.spectra.given()) spectra = read_training_spectra(file.spectra.path, file.spectra_options, spectra_left_out);
@@ -225,6 +228,9 @@ TrainingResult train_from_file(const TrainingFile& file, const TrainingOutput& o
   setup.trainer.threads = threads;
   TrainingResult result =
       run_training(candidates, std::move(spectra), catalogue, star, Extinction(file.dust_law, file.r_v), setup);
+  std::vector<SetAside> check_set_aside;
+  result.check = check_on_other_surveys(read_candidates(file, true, catalogue, check_set_aside), result.trained.model,
+                                        catalogue, Extinction(file.dust_law, file.r_v), setup);
   result.selection.left_out.insert(result.selection.left_out.begin(), set_aside.begin(), set_aside.end());
   result.trained.model.provenance = provenance_of(file, result);
   std::filesystem::create_directories(output.folder);
@@ -232,7 +238,12 @@ TrainingResult train_from_file(const TrainingFile& file, const TrainingOutput& o
   write_table(training_set_table(result), output.folder / "training-set.ecsv");
   write_table(left_out_table(result), output.folder / "left-out.ecsv");
   write_table(cross_validation_table(result), output.folder / "cross-validation.ecsv");
-  write_table(offsets_table(result), output.folder / "zero-point-offsets.ecsv");
+  write_table(offsets_table(result.offsets), output.folder / "zero-point-offsets.ecsv");
+  if (!result.check.offsets.empty()) {
+    write_table(offsets_table(result.check.offsets), output.folder / "check-zero-point-offsets.ecsv");
+    write_table(fits_table(result.check.as_given.fits), output.folder / "check-fits.ecsv");
+    write_table(fits_table(result.check.with_offsets.fits), output.folder / "check-fits-with-offsets.ecsv");
+  }
   std::vector<LightCurve> light_curves;
   for (const TrainingCandidate& candidate : candidates) light_curves.push_back(candidate.light_curve);
   write_training_report(result, light_curves, output.folder);

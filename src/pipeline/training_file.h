@@ -14,6 +14,7 @@ struct TrainingFile {
   struct Survey {
     std::string name;
     InputFile photometry, supernovae;
+    bool check = false;  ///< Not trained on; fitted with the finished template.
   };
   std::filesystem::path path;
   std::string content;  ///< As read, for the provenance.

@@ -2,7 +2,7 @@
 
 #include <Eigen/Cholesky>
 #include <array>
-#include <limits>
+#include <cmath>
 
 #include "base/parallel.h"
 
@@ -41,7 +41,8 @@ class FoldSystems {
     for (const NormalEquations& part : data_) common_.front().add(part);
   }
 
-  double score(const Smoothness& smoothness) const {
+  /// Score of every held-out supernova; empty if the system cannot be solved.
+  std::vector<double> score(const Smoothness& smoothness) const {
     std::vector<double> each(supernovae_.size());
     for (std::size_t fold = 0; fold < members_.size(); ++fold) {
       NormalEquations system = common_.front();
@@ -49,7 +50,7 @@ class FoldSystems {
       system.gradient -= data_[fold].gradient;
       add_smoothness(state_.model, smoothness, system);
       const Eigen::LLT<Eigen::Ref<Eigen::MatrixXd>> factor(system.hessian);
-      if (factor.info() != Eigen::Success) return std::numeric_limits<double>::infinity();
+      if (factor.info() != Eigen::Success) return {};
       const CoefficientLayout layout(state_.model);
       SpectralTemplate model = state_.model;
       layout.scatter(layout.gather(model) + factor.solve(system.gradient), model);
@@ -60,9 +61,7 @@ class FoldSystems {
         fit_supernova(model, supernovae_[k], trainer_.prior, 0.0, at, weight, &each[k]);
       });
     }
-    double sum = 0;
-    for (const double value : each) sum += value;
-    return sum;
+    return each;
   }
 
  private:
@@ -73,6 +72,30 @@ class FoldSystems {
   std::vector<NormalEquations> data_;
   std::vector<NormalEquations> common_;
 };
+
+double total(const std::vector<double>& each) {
+  double sum = 0;
+  for (const double value : each) sum += value;
+  return sum;
+}
+
+/// Fall of the summed score from one smoothing to another, and its error from the scatter over supernovae.
+struct Gain {
+  double value = 0, error = 0;
+};
+
+Gain gain_of(const std::vector<double>& before, const std::vector<double>& after) {
+  Gain out;
+  const auto n = static_cast<double>(before.size());
+  for (std::size_t k = 0; k < before.size(); ++k) out.value += before[k] - after[k];
+  double square = 0;
+  for (std::size_t k = 0; k < before.size(); ++k) {
+    const double off = before[k] - after[k] - out.value / n;
+    square += off * off;
+  }
+  out.error = std::sqrt(square * n / (n - 1));
+  return out;
+}
 
 struct Strength {
   const char* kind;
@@ -101,21 +124,24 @@ CrossValidationResult cross_validate(const TrainingState& state, std::span<const
   const FoldSystems systems(state, supernovae, trainer, options.folds);
   CrossValidationResult out;
   out.best = trainer.smoothness;
-  double best_score = systems.score(out.best);
-  out.points.push_back({"start", out.best, best_score, true});
+  std::vector<double> best = systems.score(out.best);
+  out.points.push_back({"start", out.best, total(best), 0, 0, true});
   for (int sweep = 0; sweep < options.sweeps; ++sweep) {
     bool moved = false;
     for (const Strength& strength : strengths) {
       for (const double factor : {options.factor, 1 / options.factor}) {
-        bool better = true;
-        while (better) {
+        for (;;) {
           Smoothness trial = out.best;
           strength.scale(trial, factor);
-          const double score = systems.score(trial);
-          better = score < best_score - 0.5;
-          out.points.push_back({strength.kind, trial, score, better});
-          if (!better) break;
-          best_score = score;
+          std::vector<double> score = systems.score(trial);
+          if (score.empty()) break;
+          const Gain gain = gain_of(best, score);
+          // The smoother of two templates stands unless the other predicts clearly better (the one-standard-error rule
+          // of Breiman et al. 1984, with the error of the paired difference).
+          const bool taken = factor > 1 ? gain.value > 0 : gain.value > options.needed_sigma * gain.error;
+          out.points.push_back({strength.kind, trial, total(score), gain.value, gain.error, taken});
+          if (!taken) break;
+          best = std::move(score);
           out.best = trial;
           moved = true;
         }

@@ -13,6 +13,7 @@ struct CrossValidationOptions {
   int folds = 5;
   double factor = 5;  ///< Ratio of neighbouring strengths that are tried.
   int sweeps = 2;     ///< Passes over the kinds of smoothing.
+  double needed_sigma = 1;  ///< Gain, in its own errors, that a less smooth template must bring.
 };
 
 /// One smoothing that was tried.
@@ -21,6 +22,8 @@ struct CrossValidationPoint {
   Smoothness smoothness;
   double score =
       0;  ///< −ln of the predictive likelihood of the held-out supernovae, summed over folds; lower is better.
+  double gain = 0;        ///< Fall of the score against the best so far,
+  double gain_error = 0;  ///< and the error of that difference, from its scatter over supernovae.
   bool chosen = false;
 };
 

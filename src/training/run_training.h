@@ -30,6 +30,13 @@ struct TrainingSetup {
   FitOptions fit;                ///< Of the out-of-fold light curves.
 };
 
+/// Supernovae of surveys that had no part in the training, fitted with the finished template.
+struct CheckFits {
+  std::vector<ZeroPointOffset> offsets;  ///< That their light curves prefer.
+  LightCurveFits as_given;
+  LightCurveFits with_offsets;  ///< After those offsets have been added to their magnitudes.
+};
+
 /// Everything a training run yields.
 struct TrainingResult {
   TrainedTemplate trained;
@@ -41,6 +48,7 @@ struct TrainingResult {
   std::vector<ZeroPointOffset> offsets;  ///< That the data would prefer.
   LightCurveFits out_of_fold;  ///< Of all candidates; those outside the training set were never seen by any template.
   std::vector<SpectralTemplate> fold_templates;
+  CheckFits check;
   std::vector<std::string> warnings;  ///< What is undetermined or doubtful, in sentences.
   std::vector<std::string> log;
 };
@@ -52,6 +60,11 @@ struct TrainingResult {
 TrainingResult run_training(std::span<const TrainingCandidate> candidates, std::vector<TrainingSpectrum> spectra,
                             const PassbandCatalogue& catalogue, const std::optional<Spectrum>& standard_star,
                             const Extinction& dust, const TrainingSetup& setup);
+
+/// Fits supernovae of other surveys with a trained template, as given and with the zero-point offsets that they prefer.
+CheckFits check_on_other_surveys(std::span<const TrainingCandidate> candidates, const SpectralTemplate& model,
+                                 const PassbandCatalogue& catalogue, const Extinction& dust,
+                                 const TrainingSetup& setup);
 
 /// Doubts about a training set, in sentences: few supernovae, one survey, one redshift, no blue or red band.
 std::vector<std::string> training_set_warnings(std::span<const TrainingSupernova> supernovae);

@@ -61,12 +61,13 @@ Table cross_validation_table(const TrainingResult& result) {
   table.add_reals("gamma_size", column_of(rows, [](const Point& p) { return p.smoothness.gamma_size; }));
   table.add_reals("colour", column_of(rows, [](const Point& p) { return p.smoothness.colour; }));
   table.add_reals("score", column_of(rows, [](const Point& p) { return p.score; }));
+  table.add_reals("gain", column_of(rows, [](const Point& p) { return p.gain; }));
+  table.add_reals("gain_error", column_of(rows, [](const Point& p) { return p.gain_error; }));
   table.add_flags("chosen", column_of(rows, [](const Point& p) { return p.chosen; }));
   return table;
 }
 
-Table offsets_table(const TrainingResult& result) {
-  const auto& rows = result.offsets;
+Table offsets_table(const std::vector<ZeroPointOffset>& rows) {
   Table table;
   table.add_strings("survey", column_of(rows, [](const ZeroPointOffset& o) { return o.survey; }));
   table.add_strings("passband", column_of(rows, [](const ZeroPointOffset& o) { return o.passband; }));

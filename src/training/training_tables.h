@@ -13,6 +13,6 @@ Table left_out_table(const TrainingResult& result);
 /// Smoothing strengths tried: kind, the six strengths, score, chosen.
 Table cross_validation_table(const TrainingResult& result);
 /// Zero-point offsets the data would prefer: survey, passband, offset (mag), offset_error (mag), supernovae.
-Table offsets_table(const TrainingResult& result);
+Table offsets_table(const std::vector<ZeroPointOffset>& rows);
 
 }  // namespace thirdrung
