@@ -143,6 +143,46 @@ std::string offsets_text(std::span<const ZeroPointOffset> offsets) {
   return out + (beyond.empty() ? "\nNone is beyond 3 σ.\n\n" : fmt::format("\n**Beyond 3 σ: {}.**\n\n", beyond));
 }
 
+double median_of(std::vector<double> values) {
+  if (values.empty()) return 0;
+  std::sort(values.begin(), values.end());
+  return values[values.size() / 2];
+}
+
+/// Surveys that had no part in the training: medians, because a few peculiar supernovae would rule a mean.
+std::string check_text(const CheckFits& check) {
+  struct Survey {
+    std::vector<double> as_given, with_offsets;
+    int trusted = 0, fits = 0;
+  };
+  std::map<std::string, Survey> surveys;
+  const auto each = [&](const LightCurveFits& fits, const auto& visit) {
+    for (const LightCurveFit& fit : fits.fits) visit(surveys[fit.survey], fit);
+  };
+  each(check.as_given, [](Survey& survey, const LightCurveFit& fit) {
+    ++survey.fits;
+    if (fit.dof > 0) survey.as_given.push_back(fit.chi2 / fit.dof);
+  });
+  each(check.with_offsets, [](Survey& survey, const LightCurveFit& fit) {
+    if (fit.trusted()) ++survey.trusted;
+    if (fit.dof > 0) survey.with_offsets.push_back(fit.chi2 / fit.dof);
+  });
+  std::string out =
+      "Fitted with the finished template, as given and after the zero-point offsets that they prefer.\n\n"
+      "| survey | fits | trusted, with offsets | median χ² per degree of freedom, as given | with offsets |\n"
+      "|---|---:|---:|---:|---:|\n";
+  for (const auto& [name, survey] : surveys) {
+    out += fmt::format("| {} | {} | {} | {:.2f} | {:.2f} |\n", name, survey.fits, survey.trusted,
+                       median_of(survey.as_given), median_of(survey.with_offsets));
+  }
+  out += "\n| survey | passband | offset [mmag] | supernovae |\n|---|---|---:|---:|\n";
+  for (const ZeroPointOffset& o : check.offsets) {
+    out += fmt::format("| {} | {} | {:+.1f} ± {:.1f} | {} |\n", o.survey, o.passband, 1e3 * o.offset, 1e3 * o.error,
+                       o.supernovae);
+  }
+  return out + "\n";
+}
+
 /// A reason without its figures, so that like reasons are counted together.
 std::string reason_kind(const std::string& reason) {
   const std::size_t digit = reason.find_first_of("0123456789+");
@@ -203,6 +243,7 @@ std::string training_report_text(const TrainingResult& result, std::span<const L
                   "smoothing. Blue: an improvement of more than 0.5 when tried; grey: not; dashed: chosen.");
   }
   if (!result.offsets.empty()) out += "## Zero points\n\n" + offsets_text(result.offsets);
+  if (!result.check.as_given.fits.empty()) out += "## Surveys not trained on\n\n" + check_text(result.check);
   out += "## Left out\n\n" + left_out_text(result.selection.left_out);
   return out;
 }
