@@ -104,7 +104,14 @@ SvgPlot residual_figure(std::span<const HeldOutPoint> points) {
   Axis z_axis{std::log10(0.009), 0, "redshift (dots shifted apart)", {}};
   for (const double z : {0.01, 0.02, 0.05, 0.1, 0.2, 0.5, 1.0})
     z_axis.ticks.emplace_back(std::log10(z), fmt::format("{}", z));
-  plot.panel({600, 148 + height, 420, list_height - height - 118}, z_axis, {-60, 60, "mmag", {}},
+  double reach = 60;
+  for (const WavelengthZone& zone : wavelength_zones()) {
+    for (const ResidualBin& bin : bins_by(
+             in_zone(points, zone), [](const HeldOutPoint& p) { return p.z; }, redshifts, "")) {
+      if (bin.supernovae >= 5) reach = std::max(reach, 1.15e3 * std::abs(bin.offset));
+    }
+  }
+  plot.panel({600, 148 + height, 420, list_height - height - 118}, z_axis, {-reach, reach, "mmag", {}},
              "by redshift, in four zones of rest wavelength");
   plot.line({z_axis.from, z_axis.to}, {0, 0}, SvgPlot::rule);
   std::size_t k = 0;
@@ -114,7 +121,7 @@ SvgPlot residual_figure(std::span<const HeldOutPoint> points) {
     for (double& z : column.centre) z = std::log10(z) + 0.008 * (static_cast<double>(k) - 1.5);
     plot.points(column.centre, column.offset, column.offset_error, colours[k]);
     plot.line(column.centre, column.offset, colours[k], 0.8);
-    plot.text(-1.98 + 0.5 * static_cast<double>(k), -54, zone.name, colours[k]);
+    plot.text(-1.98 + 0.5 * static_cast<double>(k), -0.9 * reach, zone.name, colours[k]);
     ++k;
   }
   return plot;

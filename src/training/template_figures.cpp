@@ -125,38 +125,42 @@ SvgPlot spectra_figure(const TrainingResult& result) {
   SvgPlot plot(760, 720);
   const std::array<double, 8> phases = {-12, -7, 0, 7, 14, 21, 30, 45};
   constexpr double apart = 1.3;
-  plot.panel({62, 24, 640, 640},
-             {model.wavelength_basis.front(), model.wavelength_basis.back(), "rest-frame wavelength [Å]", {}},
+  constexpr double largest_error = 0.5;  // of ln flux; beyond, nothing is drawn
+  plot.panel({62, 24, 640, 640}, {model.wavelength_min, model.wavelength_max + 500, "rest-frame wavelength [Å]", {}},
              {-8 * apart - 2.2, 1.4, "ln flux density per Å + constant", {}});
-  const Values waves = steps(model.wavelength_basis.front(), model.wavelength_basis.back(), 20);
+  const Values waves = steps(model.wavelength_min, model.wavelength_max, 20);
   for (std::size_t i = 0; i < phases.size(); ++i) {
     const double q = phases[i];
     // Flux relative to that at 5500 Å, one spectrum below the other.
     const double level = model.phi(q, 5500) + apart * static_cast<double>(i) + 0.6;
     const Eigen::MatrixXd covariance = phi_slice_covariance(result, q);
-    Values y, low, high;
+    Values x, y, low, high;
     for (const double wave : waves) {
       const auto basis = model.wavelength_basis.at(wave);
       const Eigen::Map<const Eigen::Vector4d> w(basis.value.data());
       const double variance = w.dot(covariance.block(basis.first, basis.first, 4, 4) * w);
       const double error = std::sqrt(std::max(0.0, variance));
+      if (error > largest_error) {
+        if (wave > 5500) break;
+        x.clear(), y.clear(), low.clear(), high.clear();
+        continue;
+      }
+      x.push_back(wave);
       y.push_back(model.phi(q, wave) - level);
       low.push_back(y.back() - error);
       high.push_back(y.back() + error);
     }
+    if (x.empty()) continue;
     const std::string colour = i == 2 ? SvgPlot::blue : SvgPlot::ink;
-    plot.band(waves, low, high, colour);
-    plot.line(waves, y, colour, 1.2);
-    plot.text(waves.back() + 90, y.back() - 0.1,
+    plot.band(x, low, high, colour);
+    plot.line(x, y, colour, 1.2);
+    plot.text(x.back() + 60, std::max(y.back() - 0.1, -8 * apart - 2.1),
               fmt::format("{}{:.0f} d",
                           q < 0   ? "−"
                           : q > 0 ? "+"
                                   : "",
                           std::abs(q)),
               colour);
-  }
-  for (const double limit : {model.wavelength_min, model.wavelength_max}) {
-    plot.line({limit, limit}, {-30, 10}, SvgPlot::muted, 0.8, true);
   }
   return plot;
 }
@@ -225,12 +229,13 @@ SvgPlot scatter_figure(const TrainingResult& result) {
       plot.text(w, p - 1.3, fmt::format("{:.1f}", 100 * value), value > 0.07 ? "#ffffff" : SvgPlot::ink, "middle", 10);
     }
   }
-  plot.panel({66, 310, 380, 200}, wave_axis, {0, 0.16, "κ", {}}, "κ: scatter common to a band");
   const Values waves = steps(2600, 9400, 50);
   Values kappa;
   for (const double w : waves) kappa.push_back(model.colour_scatter(w));
+  const double top = 1.1 * *std::max_element(kappa.begin(), kappa.end());
+  plot.panel({66, 310, 380, 200}, wave_axis, {0, top, "κ", {}}, "κ: scatter common to a band");
   plot.line(waves, kappa, SvgPlot::blue, 1.8);
-  plot.panel({536, 34, 400, 476}, {-18, 52, phase_axis.label, {}}, {-10.5, 1.5, "Γ − 2 per band", {{0, "0"}}},
+  plot.panel({536, 34, 400, 476}, {-18, 52, phase_axis.label, {}}, {-10.5, 3, "Γ − 2 per band", {{0, "0"}}},
              "Γ: change of ln flux with stretch, at fixed p/s");
   const Values phases = steps(-18, 52, 1);
   double down = 0;

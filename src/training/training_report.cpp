@@ -185,6 +185,7 @@ std::string check_text(const CheckFits& check) {
 
 /// A reason without its figures, so that like reasons are counted together.
 std::string reason_kind(const std::string& reason) {
+  if (reason.starts_with("peculiar")) return "peculiar";
   const std::size_t digit = reason.find_first_of("0123456789+");
   std::string kind = reason.substr(0, digit == 0 ? std::string::npos : digit);
   if (kind.starts_with("fewer than")) kind = reason;
@@ -224,8 +225,8 @@ std::string training_report_text(const TrainingResult& result, std::span<const L
   out += "## Spectra\n\n";
   out += figure(
       "spectra",
-      "Fiducial spectra at eight phases, shifted by equal steps, with the 1σ error; between the dashed lines the "
-      "template is used.");
+      "Fiducial spectra at eight phases, shifted by equal steps, with the 1σ error, over the wavelengths that are used "
+      "and where the error is below 0.5.");
   out += "## Colour law\n\n";
   out += figure(
       "colour-law",
