@@ -14,7 +14,7 @@ namespace thirdrung {
 struct TemplateGridOptions {
   double phase_min = -20;         ///< In q = p/s [d]; cut to the template's own phases.
   double phase_max = 60;          ///< [d]
-  double phase_step = 2.5;        ///< Widest gap between nodes [d]; the breakpoints of Φ are nodes too.
+  double phase_step = 1.0;        ///< Widest gap between nodes [d]; the breakpoints of Φ are nodes too.
   double wavelength_step = 25.0;  ///< [angstrom]; must be that of the BandWeights it is used with.
 };
 

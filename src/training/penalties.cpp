@@ -67,7 +67,7 @@ void add_basis(const CubicBasis::Weights& w, double amount, Eigen::Ref<Eigen::Ve
 
 std::vector<GaugeRow> gauge_rows(const SpectralTemplate& model) {
   const CoefficientLayout layout(model);
-  std::vector<GaugeRow> rows(6, GaugeRow{0.0, Eigen::VectorXd::Zero(layout.size())});
+  std::vector<GaugeRow> rows(7, GaugeRow{0.0, Eigen::VectorXd::Zero(layout.size())});
   const auto put_phi = [&](GaugeRow& row, const CubicBasis::Weights& phase, const CubicBasis::Weights& wave,
                            double amount) {
     for (int i = 0; i < 4; ++i) {
@@ -85,12 +85,12 @@ std::vector<GaugeRow> gauge_rows(const SpectralTemplate& model) {
   struct Mean {
     double phase;
     const std::vector<double>& weight;
-    int flux_row, slope_row, colour_row, gamma_row;  // −1: no such condition here
+    int flux_row, slope_row, colour_row, gamma_row, gamma_slope_row;  // −1: no such condition here
     double colour_target;
   };
-  const std::array<Mean, 3> means = {Mean{0.0, model.gauge_weight_b, 0, 1, 2, 4, 0.0},
-                                     Mean{0.0, model.gauge_weight_v, -1, -1, 3, -1, -1.0},
-                                     Mean{15.0, model.gauge_weight_b, -1, -1, -1, 5, 0.0}};
+  const std::array<Mean, 3> means = {Mean{0.0, model.gauge_weight_b, 0, 1, 2, 4, 6, 0.0},
+                                     Mean{0.0, model.gauge_weight_v, -1, -1, 3, -1, -1, -1.0},
+                                     Mean{15.0, model.gauge_weight_b, -1, -1, -1, 5, -1, 0.0}};
   for (const Mean& mean : means) {
     const auto phase = model.phase_basis.at(mean.phase);
     const auto slope = model.phase_basis.slope_at(mean.phase);
@@ -100,6 +100,9 @@ std::vector<GaugeRow> gauge_rows(const SpectralTemplate& model) {
     double mean_slope = 0;
     double mean_colour = 0;
     double mean_gamma = 0;
+    double mean_gamma_slope = 0;
+    const auto gamma_slope = model.stretch_phase_basis.slope_at(mean.phase);
+    const Eigen::VectorXd gamma_slopes = model.gamma_slice(mean.phase, true);
     std::vector<double> share(mean.weight.size());
     std::vector<double> slopes(mean.weight.size());
     for (std::size_t j = 0; j < share.size(); ++j) {
@@ -117,10 +120,21 @@ std::vector<GaugeRow> gauge_rows(const SpectralTemplate& model) {
       mean_colour += share[j] * model.colour(model.gauge_wavelength[j]);
       mean_gamma += share[j] * model.gamma(mean.phase, model.gauge_wavelength[j]);
     }
+    // Slope in q of the B light curve's response to s: zero, so that B peaks at p = 0 whatever s. Without it a change
+    // of t_0 with s goes unnoticed into Γ, since B is flat at its peak, and s loses its scale.
+    for (std::size_t j = 0; j < share.size(); ++j) {
+      if (share[j] == 0.0) continue;
+      const auto wave = model.stretch_wavelength_basis.at(model.gauge_wavelength[j]);
+      double slope_here = 0;
+      for (int k = 0; k < 4; ++k) slope_here += wave.value[static_cast<std::size_t>(k)] * gamma_slopes(wave.first + k);
+      mean_gamma_slope +=
+          share[j] * (slope_here + model.gamma(mean.phase, model.gauge_wavelength[j]) * (slopes[j] - mean_slope));
+    }
     if (mean.flux_row >= 0) rows[static_cast<std::size_t>(mean.flux_row)].value = std::log(flux);
     if (mean.slope_row >= 0) rows[static_cast<std::size_t>(mean.slope_row)].value = mean_slope;
     if (mean.colour_row >= 0) rows[static_cast<std::size_t>(mean.colour_row)].value = mean_colour - mean.colour_target;
     if (mean.gamma_row >= 0) rows[static_cast<std::size_t>(mean.gamma_row)].value = mean_gamma;
+    if (mean.gamma_slope_row >= 0) rows[static_cast<std::size_t>(mean.gamma_slope_row)].value = mean_gamma_slope;
     for (std::size_t j = 0; j < share.size(); ++j) {
       if (share[j] == 0.0) continue;
       const double wavelength = model.gauge_wavelength[j];
@@ -136,6 +150,12 @@ std::vector<GaugeRow> gauge_rows(const SpectralTemplate& model) {
         add_basis(model.colour_basis.at(wavelength), share[j],
                   row.gradient.segment(layout.colour_start(), layout.colours));
         put_phi(row, phase, wave, share[j] * (model.colour(wavelength) - mean_colour));
+      }
+      if (mean.gamma_slope_row >= 0) {
+        GaugeRow& row = rows[static_cast<std::size_t>(mean.gamma_slope_row)];
+        const auto gamma_wave = model.stretch_wavelength_basis.at(wavelength);
+        put_gamma(row, gamma_slope, gamma_wave, share[j]);
+        put_gamma(row, gamma_phase, gamma_wave, share[j] * (slopes[j] - mean_slope));
       }
       if (mean.gamma_row >= 0) {
         GaugeRow& row = rows[static_cast<std::size_t>(mean.gamma_row)];

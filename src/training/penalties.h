@@ -21,7 +21,8 @@ double add_smoothness(const SpectralTemplate& model, const Smoothness& smoothnes
 /// ½ × penalty alone.
 double half_smoothness(const SpectralTemplate& model, const Smoothness& smoothness);
 
-/// Adds the six gauge conditions of the template as pseudo-observations of error `error`; returns ½ × their χ².
+/// Adds the six gauge conditions of the template, and a seventh that makes B peak at p = 0 whatever s, as
+/// pseudo-observations of error `error`; returns ½ × their χ².
 double add_gauge(const SpectralTemplate& model, double error, NormalEquations& into);
 double half_gauge(const SpectralTemplate& model, double error);
 
