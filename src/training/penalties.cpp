@@ -100,7 +100,6 @@ std::vector<GaugeRow> gauge_rows(const SpectralTemplate& model) {
     double mean_slope = 0;
     double mean_colour = 0;
     double mean_gamma = 0;
-    double mean_gamma_slope = 0;
     const auto gamma_slope = model.stretch_phase_basis.slope_at(mean.phase);
     const Eigen::VectorXd gamma_slopes = model.gamma_slice(mean.phase, true);
     std::vector<double> share(mean.weight.size());
@@ -122,19 +121,27 @@ std::vector<GaugeRow> gauge_rows(const SpectralTemplate& model) {
     }
     // Slope in q of the B light curve's response to s: zero, so that B peaks at p = 0 whatever s. Without it a change
     // of t_0 with s goes unnoticed into Γ, since B is flat at its peak, and s loses its scale.
+    std::vector<double> gammas(share.size());
+    std::vector<double> gamma_slope_at(share.size());
+    double mean_gamma_slope = 0;
+    double mean_product = 0;
     for (std::size_t j = 0; j < share.size(); ++j) {
       if (share[j] == 0.0) continue;
       const auto wave = model.stretch_wavelength_basis.at(model.gauge_wavelength[j]);
-      double slope_here = 0;
-      for (int k = 0; k < 4; ++k) slope_here += wave.value[static_cast<std::size_t>(k)] * gamma_slopes(wave.first + k);
-      mean_gamma_slope +=
-          share[j] * (slope_here + model.gamma(mean.phase, model.gauge_wavelength[j]) * (slopes[j] - mean_slope));
+      for (int k = 0; k < 4; ++k) {
+        gamma_slope_at[j] += wave.value[static_cast<std::size_t>(k)] * gamma_slopes(wave.first + k);
+      }
+      gammas[j] = model.gamma(mean.phase, model.gauge_wavelength[j]);
+      mean_gamma_slope += share[j] * gamma_slope_at[j];
+      mean_product += share[j] * gammas[j] * slopes[j];
     }
     if (mean.flux_row >= 0) rows[static_cast<std::size_t>(mean.flux_row)].value = std::log(flux);
     if (mean.slope_row >= 0) rows[static_cast<std::size_t>(mean.slope_row)].value = mean_slope;
     if (mean.colour_row >= 0) rows[static_cast<std::size_t>(mean.colour_row)].value = mean_colour - mean.colour_target;
     if (mean.gamma_row >= 0) rows[static_cast<std::size_t>(mean.gamma_row)].value = mean_gamma;
-    if (mean.gamma_slope_row >= 0) rows[static_cast<std::size_t>(mean.gamma_slope_row)].value = mean_gamma_slope;
+    if (mean.gamma_slope_row >= 0)
+      rows[static_cast<std::size_t>(mean.gamma_slope_row)].value =
+          mean_gamma_slope + mean_product - mean_gamma * mean_slope;
     for (std::size_t j = 0; j < share.size(); ++j) {
       if (share[j] == 0.0) continue;
       const double wavelength = model.gauge_wavelength[j];
@@ -156,6 +163,10 @@ std::vector<GaugeRow> gauge_rows(const SpectralTemplate& model) {
         const auto gamma_wave = model.stretch_wavelength_basis.at(wavelength);
         put_gamma(row, gamma_slope, gamma_wave, share[j]);
         put_gamma(row, gamma_phase, gamma_wave, share[j] * (slopes[j] - mean_slope));
+        put_phi(row, slope, wave, share[j] * (gammas[j] - mean_gamma));
+        put_phi(row, phase, wave,
+                share[j] * (gamma_slope_at[j] - mean_gamma_slope + gammas[j] * slopes[j] - mean_product -
+                            (gammas[j] - mean_gamma) * mean_slope - mean_gamma * (slopes[j] - mean_slope)));
       }
       if (mean.gamma_row >= 0) {
         GaugeRow& row = rows[static_cast<std::size_t>(mean.gamma_row)];
