@@ -1,10 +1,9 @@
 #pragma once
 
+#include <catch2/catch.hpp>
 #include <cstdlib>
 #include <filesystem>
 #include <optional>
-
-#include <catch2/catch.hpp>
 
 namespace thirdrung::testing {
 
@@ -23,10 +22,10 @@ inline std::optional<std::filesystem::path> real_data_folder() {
 }  // namespace thirdrung::testing
 
 /// Leaves a [realdata] test with a message where the data are absent.
-#define THIRDRUNG_NEEDS_REAL_DATA(folder)                                               \
-  const auto folder##_found = thirdrung::testing::real_data_folder();                   \
-  if (!folder##_found) {                                                                \
-    WARN("skipped: no published data (set THIRDRUNG_REAL_DATA to their folder)");       \
-    return;                                                                             \
-  }                                                                                     \
+#define THIRDRUNG_NEEDS_REAL_DATA(folder)                                         \
+  const auto folder##_found = thirdrung::testing::real_data_folder();             \
+  if (!folder##_found) {                                                          \
+    WARN("skipped: no published data (set THIRDRUNG_REAL_DATA to their folder)"); \
+    return;                                                                       \
+  }                                                                               \
   const std::filesystem::path folder = *folder##_found

@@ -11,8 +11,8 @@ namespace thirdrung {
 /// How the strength of the smoothing is chosen.
 struct CrossValidationOptions {
   int folds = 5;
-  double factor = 5;  ///< Ratio of neighbouring strengths that are tried.
-  int sweeps = 2;     ///< Passes over the kinds of smoothing.
+  double factor = 5;        ///< Ratio of neighbouring strengths that are tried.
+  int sweeps = 2;           ///< Passes over the kinds of smoothing.
   double needed_sigma = 1;  ///< Gain, in its own errors, that a less smooth template must bring.
 };
 
