@@ -7,11 +7,11 @@
 #include <algorithm>
 #include <cmath>
 
+#include "base/chi_square.h"
 #include "base/constants.h"
 #include "base/error.h"
 #include "hubbleflow/least_squares.h"
 #include "sky/position.h"
-#include "standardisation/chi_square.h"
 
 namespace thirdrung {
 

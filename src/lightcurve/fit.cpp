@@ -5,8 +5,8 @@
 #include <algorithm>
 #include <cmath>
 
+#include "base/chi_square.h"
 #include "base/constants.h"
-#include "lightcurve/fit_probability.h"
 #include "lightcurve/solve.h"
 
 namespace thirdrung {
@@ -164,7 +164,7 @@ void fill(const Problem& problem, const LightCurve& light_curve, const PreparedT
   fit.chi2 = best.chi2;
   fit.epochs_used = static_cast<int>(best.selection.size());
   fit.dof = std::max(0, fit.epochs_used - 4);
-  fit.fit_probability = chance_of_larger_chi2(fit.chi2, fit.dof);
+  fit.fit_probability = chi_square_survival(fit.chi2, fit.dof);
   fit.dm15_b = prepared.dm15_b(fit.s, fit.c);
   fit.iterations = best.iterations;
   describe_epochs(problem, light_curve, best, fit);

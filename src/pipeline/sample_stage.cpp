@@ -6,8 +6,8 @@
 #include <cmath>
 #include <map>
 
+#include "base/chi_square.h"
 #include "base/error.h"
-#include "lightcurve/fit_probability.h"
 #include "lightcurve/results.h"
 #include "pipeline/inputs.h"
 #include "pipeline/table_tools.h"
@@ -131,7 +131,7 @@ CutSubject subject_of(const Member& member) {
   out.last_phase = member.last_phase;
   out.mw_ebv = member.supernova ? member.supernova->mw_ebv : missing_value;
   out.z_flow = member.redshifts.z_flow;
-  out.fit_probability = chance_of_larger_chi2(member.chi2, member.dof);
+  out.fit_probability = chi_square_survival(member.chi2, member.dof);
   out.bands = static_cast<int>(member.bands.size());
   out.epochs = member.epochs;
   out.trusted = member.trusted;

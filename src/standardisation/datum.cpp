@@ -9,9 +9,9 @@
 #include <map>
 #include <set>
 
+#include "base/chi_square.h"
 #include "base/constants.h"
 #include "base/error.h"
-#include "standardisation/chi_square.h"
 
 namespace thirdrung {
 

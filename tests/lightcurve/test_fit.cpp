@@ -1,8 +1,8 @@
 #include <catch2/catch.hpp>
 #include <cmath>
 
+#include "base/chi_square.h"
 #include "lightcurve/fit.h"
-#include "lightcurve/fit_probability.h"
 #include "lightcurve/synthetic_survey.h"
 
 using namespace thirdrung;
@@ -252,7 +252,7 @@ TEST_CASE("chance of a larger chi2 agrees with scipy", "[published]") {
       {5, 5, 0.4158801869955079},        {60, 56, 0.3328690840455234},         {20, 56, 0.9999977464659493},
       {250, 56, 2.4961598289403188e-26}, {1200, 1000, 1.2255942330622893e-05}, {900, 1000, 0.9892827619087102}};
   for (const auto& row : reference) {
-    CHECK(chance_of_larger_chi2(row[0], static_cast<int>(row[1])) == Approx(row[2]).epsilon(1e-10));
+    CHECK(chi_square_survival(row[0], static_cast<int>(row[1])) == Approx(row[2]).epsilon(1e-10));
   }
-  CHECK(chance_of_larger_chi2(3.0, 0) == 1.0);
+  CHECK(chi_square_survival(3.0, 0) == 1.0);
 }

@@ -2,8 +2,8 @@
 #include <catch2/catch.hpp>
 #include <cmath>
 
+#include "base/chi_square.h"
 #include "base/error.h"
-#include "standardisation/chi_square.h"
 #include "standardisation/datum.h"
 #include "standardisation/host_mass.h"
 

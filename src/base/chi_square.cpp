@@ -1,4 +1,4 @@
-#include "standardisation/chi_square.h"
+#include "base/chi_square.h"
 
 #include <cmath>
 #include <limits>
