@@ -25,7 +25,7 @@ struct DefaultUnit {
   const char* unit;
 };
 
-constexpr std::array<DefaultUnit, 22> kDefaultUnits = {{
+constexpr std::array<DefaultUnit, 23> kDefaultUnits = {{
     {"mjd", "d"},
     {"peak_mjd", "d"},
     {"peak_mjd_guess", "d"},
@@ -45,6 +45,7 @@ constexpr std::array<DefaultUnit, 22> kDefaultUnits = {{
     {"colour", "mag"},
     {"mw_ebv", "mag"},
     {"m_b_standardised", "mag"},
+    {"distance_modulus", "mag"},
     {"wavelength", "Angstrom"},
     {"v_pec", "km / s"},
     {"host_log_mass", "dex"},
