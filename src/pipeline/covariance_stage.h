@@ -20,6 +20,13 @@ struct CoefficientCovariance {
 void write_coefficient_covariance(const CoefficientCovariance& coefficients, const std::filesystem::path& path);
 CoefficientCovariance read_coefficient_covariance(const std::filesystem::path& path);
 
+/// Names of the parts that calibrators have too.
+inline constexpr const char* light_curve_part = "light-curve fits";
+inline constexpr const char* intrinsic_part = "intrinsic scatter";
+
+/// J Sigma J^T with J the derivatives of the magnitudes by alpha, beta, gamma: s - 1, -c, P - 1/2. It does not weigh.
+CovariancePart coefficients_part(const Magnitudes& magnitudes, const CoefficientCovariance& coefficients);
+
 /// The covariance of the standardised magnitudes in its parts: light-curve fit, intrinsic scatter, peculiar velocities
 /// and redshift errors, alpha, beta and gamma (common to all supernovae), coherent flows if asked for, and the
 /// systematics.

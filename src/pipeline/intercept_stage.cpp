@@ -9,36 +9,12 @@
 #include "hubbleflow/influence.h"
 #include "hubbleflow/robust.h"
 #include "hubbleflow/scan_frame.h"
+#include "pipeline/quantities.h"
 #include "pipeline/table_tools.h"
 
 namespace thirdrung {
 
 namespace {
-
-/// Rows quantity, value, error, unit, description.
-class Quantities {
- public:
-  void add(const std::string& name, double value, double error, const std::string& unit, const std::string& meaning) {
-    names_.push_back(name);
-    values_.push_back(value);
-    errors_.push_back(error);
-    units_.push_back(unit);
-    meanings_.push_back(meaning);
-  }
-  void add(const std::string& name, double value, const std::string& unit, const std::string& meaning) {
-    add(name, value, missing_value, unit, meaning);
-  }
-  Table table() const {
-    Table out;
-    out.add_strings("quantity", names_).add_reals("value", values_).add_reals("error", errors_, "", "1 sigma");
-    out.add_strings("unit_of_value", units_).add_strings("meaning", meanings_);
-    return out;
-  }
-
- private:
-  std::vector<std::string> names_, units_, meanings_;
-  std::vector<double> values_, errors_;
-};
 
 void add_dipole(Quantities& out, const FlowDipole& dipole) {
   out.add("dipole", dipole.amplitude, dipole.amplitude_error, "km / s", "velocity of the whole sample");
