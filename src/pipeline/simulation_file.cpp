@@ -158,6 +158,21 @@ SimulatedSurvey read_survey(RunSection section) {
   return out;
 }
 
+SimulatedCalibrators read_calibrators(RunSection section) {
+  SimulatedCalibrators out;
+  out.supernovae = static_cast<std::size_t>(section.integer("supernovae", 0, 0));
+  out.shared_hosts = static_cast<std::size_t>(section.integer("shared_hosts", 0, 0));
+  out.surveys = section.texts("surveys");
+  read_number(section, "z_min", out.z_min);
+  read_number(section, "z_max", out.z_max);
+  read_number(section, "modulus_error", out.modulus_error);
+  read_number(section, "common_error", out.common_error);
+  out.prefix = section.text("prefix", out.prefix);
+  out.host_prefix = section.text("host_prefix", out.host_prefix);
+  section.done();
+  return out;
+}
+
 /// The sections of one kind, [[key]].
 std::vector<RunSection> each(const toml::table& file, const std::string& path, const std::string& key,
                              const RunSection& whole) {
@@ -192,7 +207,8 @@ SimulationOptions read_simulation_file(const std::filesystem::path& path) {
       throw InputError(whole.place(key), fmt::format("{} is not a section", key), fmt::format("write [{}]", key));
     return RunSection(*keys, name, fmt::format("[{}]", key));
   };
-  const std::string sections[] = {"relation", "population", "velocities", "milky_way", "passband", "survey"};
+  const std::string sections[] = {"relation", "population", "velocities", "milky_way",
+                                  "passband", "survey",     "calibrators"};
   whole.know(sections);
   whole.done();
   out.relation = read_relation(section("relation"));
@@ -201,6 +217,7 @@ SimulationOptions read_simulation_file(const std::filesystem::path& path) {
   out.milky_way = read_milky_way(section("milky_way"));
   for (const RunSection& one : each(file, name, "passband", whole)) out.passbands.push_back(read_passband(one));
   for (const RunSection& one : each(file, name, "survey", whole)) out.surveys.push_back(read_survey(one));
+  out.calibrators = read_calibrators(section("calibrators"));
   check_simulation(out);
   return out;
 }

@@ -130,6 +130,31 @@ void check_survey(const SimulatedSurvey& survey, const Part& part) {
   part.between("peak_limit_width", survey.peak_limit_width, 0, 5);
 }
 
+void check_calibrators(const SimulationOptions& options) {
+  const SimulatedCalibrators& calibrators = options.calibrators;
+  const Part part{options.origin, "[calibrators]"};
+  part.between("supernovae", static_cast<double>(calibrators.supernovae), 0, 1000);
+  part.between("shared_hosts", static_cast<double>(calibrators.shared_hosts), 0,
+               std::floor(0.5 * static_cast<double>(calibrators.supernovae)));
+  part.increase("z_min", calibrators.z_min, "z_max", calibrators.z_max);
+  part.between("z_min", calibrators.z_min, 0.002, 0.1);
+  part.between("modulus_error", calibrators.modulus_error, 0.001, 1);
+  part.between("common_error", calibrators.common_error, 0, 1);
+  std::vector<std::string> names;
+  for (const SimulatedSurvey& survey : options.surveys) {
+    names.push_back(survey.name);
+    const std::string& prefix = survey.prefix.empty() ? survey.name : survey.prefix;
+    if (calibrators.supernovae > 0 && prefix == calibrators.prefix)
+      part.fail("prefix", fmt::format("is that of survey \"{}\"", survey.name), "give another");
+  }
+  for (const std::string& name : calibrators.surveys) {
+    if (std::find(names.begin(), names.end(), name) != names.end()) continue;
+    const std::string near = nearest_word(name, names);
+    part.fail("surveys", fmt::format("names the unknown {}", name),
+              near.empty() ? "name surveys of this file" : fmt::format("did you mean \"{}\"?", near));
+  }
+}
+
 }  // namespace
 
 void check_simulation(const SimulationOptions& options) {
@@ -155,6 +180,7 @@ void check_simulation(const SimulationOptions& options) {
     }
     if (!known) part.fail("shared_with", "names no earlier survey", "name one that stands before it");
   }
+  check_calibrators(options);
 }
 
 }  // namespace thirdrung

@@ -5,11 +5,18 @@
 
 #include "light/passband_catalogue.h"
 #include "lightcurve/photometry.h"
+#include "simulation/draw_calibrators.h"
 #include "simulation/draw_supernova.h"
 #include "simulation/simulation_options.h"
 #include "template/spectral_template.h"
 
 namespace thirdrung {
+
+/// A calibrator and its host, by number.
+struct SimulatedCalibrator {
+  std::string supernova;
+  std::size_t host = 0;
+};
 
 /// Surveys that never happened, as their tables would have them, with the truth beside.
 struct SimulatedSample {
@@ -18,6 +25,8 @@ struct SimulatedSample {
   std::vector<LightCurve> light_curves;  ///< One each, in the same order.
   std::vector<SupernovaTruth> truths;    ///< A row a supernova, in order of first appearance.
   double a_b = 0;                        ///< True intercept.
+  std::vector<SimulatedHost> hosts;      ///< Of the calibrators, their distances as measured.
+  std::vector<SimulatedCalibrator> calibrators;
 };
 
 /// Draws supernovae, observes them, and keeps drawing until every survey has found as many as it asks for.

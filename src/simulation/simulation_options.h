@@ -122,6 +122,18 @@ struct SimulatedSurvey {
   std::size_t shared = 0;   ///< the first so many within this one's redshifts are observed here too.
 };
 
+/// Supernovae in nearby hosts whose distances a ladder below has measured. They follow the same relation.
+struct SimulatedCalibrators {
+  std::size_t supernovae = 0;
+  std::size_t shared_hosts = 0;           ///< So many hosts have two of them.
+  std::vector<std::string> surveys;       ///< Who observe them, host by host in turn; empty: the first survey.
+  double z_min = 0.004, z_max = 0.01;     ///< Of the flow.
+  double modulus_error = 0.06;            ///< Of each host's distance modulus [mag].
+  double common_error = 0.0;              ///< Of all of them together [mag].
+  std::string prefix = "Near";            ///< Supernovae are called prefix-001 and so on,
+  std::string host_prefix = "Near host";  ///< and hosts "host_prefix 1".
+};
+
 struct SimulationOptions {
   std::uint64_t seed = 1;
   SimulatedRelation relation;
@@ -131,6 +143,7 @@ struct SimulationOptions {
   bool template_scatter = true;  ///< Scatter light curves about the template by its ε and κ.
   std::vector<SimulatedPassband> passbands;
   std::vector<SimulatedSurvey> surveys;
+  SimulatedCalibrators calibrators;
   int threads = 0;                                  ///< 0: all cores. The result does not depend on it.
   std::string origin = "the simulation's options";  ///< Named in messages.
 };

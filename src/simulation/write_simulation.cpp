@@ -2,6 +2,7 @@
 
 #include <fmt/format.h>
 
+#include <algorithm>
 #include <cmath>
 #include <system_error>
 
@@ -164,6 +165,44 @@ Table truth_table(const SimulatedSample& sample, const SimulationOptions& option
   return table;
 }
 
+/// As a ladder below would hand them on: docs/formats.md, "calibrators".
+Table calibrators_table(const SimulatedSample& sample, const SimulationOptions& options) {
+  const double error = std::hypot(options.calibrators.modulus_error, options.calibrators.common_error);
+  std::vector<std::string> names, hosts;
+  std::vector<double> moduli;
+  for (const SimulatedCalibrator& one : sample.calibrators) {
+    names.push_back(one.supernova);
+    hosts.push_back(sample.hosts[one.host].name);
+    moduli.push_back(rounded(sample.hosts[one.host].measured_modulus, 4));
+  }
+  Table table;
+  table.add_strings("supernova", names).add_strings("host", hosts).add_reals("distance_modulus", moduli, "mag");
+  table.add_reals("distance_modulus_error", std::vector<double>(names.size(), rounded(error, 5)), "mag");
+  table.set_meta("source", "simulated");
+  return table;
+}
+
+Table host_covariance_table(const SimulatedSample& sample, const SimulationOptions& options) {
+  std::vector<std::size_t> hosts;  // Those that have a calibrator in the tables.
+  for (std::size_t h = 0; h < sample.hosts.size(); ++h) {
+    if (std::any_of(sample.calibrators.begin(), sample.calibrators.end(), [h](const auto& c) { return c.host == h; }))
+      hosts.push_back(h);
+  }
+  const Eigen::MatrixXd covariance = host_covariance(options);
+  std::vector<std::string> names;
+  for (const std::size_t h : hosts) names.push_back(sample.hosts[h].name);
+  Table table;
+  table.add_strings("host", names);
+  for (std::size_t k = 0; k < hosts.size(); ++k) {
+    std::vector<double> column;
+    for (const std::size_t h : hosts)
+      column.push_back(rounded(covariance(static_cast<Eigen::Index>(h), static_cast<Eigen::Index>(hosts[k])), 9));
+    table.add_reals(names[k], std::move(column), "mag2");
+  }
+  table.set_meta("source", "simulated");
+  return table;
+}
+
 }  // namespace
 
 void write_simulation(const SimulatedSample& sample, const SimulationOptions& options, const fs::path& folder) {
@@ -173,6 +212,10 @@ void write_simulation(const SimulatedSample& sample, const SimulationOptions& op
   for (const SimulatedSurvey& survey : options.surveys) {
     write_table(photometry_table(sample, survey), folder / "lightcurves" / (survey.name + ".ecsv"));
     write_table(supernova_table(sample, survey), folder / "supernovae" / (survey.name + ".ecsv"));
+  }
+  if (!sample.calibrators.empty()) {
+    write_table(calibrators_table(sample, options), folder / "calibrators.ecsv");
+    write_table(host_covariance_table(sample, options), folder / "host-covariance.ecsv");
   }
   write_table(truth_table(sample, options), folder / "truth.ecsv");
 }

@@ -65,3 +65,15 @@ TEST_CASE("what a simulation file gets wrong is named with its line") {
   CHECK(says(complaint("seed = \n"), "mend the TOML"));
   CHECK(says(complaint(sound + "z_max = 0.005\n"), "z_min of survey \"one\""));
 }
+
+TEST_CASE("calibrators are simulated where a section asks for them") {
+  const ScratchFolder folder;
+  CHECK(read_simulation_file(folder.file("s.toml", sound)).calibrators.supernovae == 0);
+  const SimulationOptions options = read_simulation_file(folder.file(
+      "c.toml", sound + "[calibrators]\nsupernovae = 6\nshared_hosts = 2\nsurveys = [\"one\"]\ncommon_error = 0.03\n"));
+  CHECK(options.calibrators.supernovae == 6);
+  CHECK(options.calibrators.shared_hosts == 2);
+  CHECK(options.calibrators.common_error == 0.03);
+  CHECK(says(complaint(sound + "[calibrators]\nsupernovae = 3\nshared_hosts = 2\n"), "shared_hosts of [calibrators]"));
+  CHECK(says(complaint(sound + "[calibrators]\nsurveys = [\"onr\"]\n"), "did you mean \"one\""));
+}
