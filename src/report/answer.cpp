@@ -6,6 +6,7 @@
 #include <cmath>
 
 #include "report/digits.h"
+#include "report/ladder_rows.h"
 
 namespace thirdrung {
 namespace {
@@ -115,6 +116,17 @@ std::string single_supernova(const RunTables& run) {
                      fixed(std::abs(shifts[most]), decimals_for(std::abs(shifts[most]))), share, names[most]);
 }
 
+/// "Of the variance of log H0, 61 % is from calibrators, 25 % from the Hubble flow, ...".
+std::string sides_of_the_ladder(const RunTables& run) {
+  if (!has_ladder(run)) return "";
+  std::string list;
+  for (const auto& [source, share] : ladder_rows(run).shares) {
+    if (std::abs(share) < 0.0005) continue;  // A run without systematics need not speak of them.
+    list += fmt::format(", {} %{} from {}", fixed(100.0 * share, 0), list.empty() ? " is" : "", source);
+  }
+  return list.empty() ? "" : fmt::format("Of the variance of log H0{}.", list);
+}
+
 }  // namespace
 
 Answer make_answer(const RunTables& run) {
@@ -132,12 +144,18 @@ Answer make_answer(const RunTables& run) {
   if (known(summary.hubble_constant.value)) {
     answer.hubble_constant = with_error(summary.hubble_constant.value, summary.hubble_constant.error);
   }
+  if (summary.calibrators && known(summary.absolute_magnitude.value)) {
+    answer.absolute_magnitude =
+        fmt::format("{} mag, from {}", with_error(summary.absolute_magnitude.value, summary.absolute_magnitude.error),
+                    counted(*summary.calibrators, "calibrator", "calibrators"));
+  }
   add_facts(summary, answer);
   if (answer.blind) {
     answer.qualifications.push_back(
         "This run is blind: the value shown carries a hidden offset; errors and differences are true.");
   }
-  for (const std::string& sentence : {leading_error(run), choices(run), single_supernova(run)}) {
+  for (const std::string& sentence :
+       {leading_error(run), sides_of_the_ladder(run), choices(run), single_supernova(run)}) {
     if (!sentence.empty()) answer.qualifications.push_back(sentence);
   }
   answer.warnings = summary.warnings;

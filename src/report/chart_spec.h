@@ -52,6 +52,7 @@ ChartSection hubble_section(const ChartInput& input);
 ChartSection residual_section(const ChartInput& input);
 ChartSection standardisation_section(const ChartInput& input);
 ChartSection population_section(const ChartInput& input);
+ChartSection ladder_section(const ChartInput& input);
 ChartSection choices_section(const ChartInput& input);
 ChartSection budget_section(const ChartInput& input);
 ChartSection influence_section(const ChartInput& input);

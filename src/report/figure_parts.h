@@ -20,6 +20,7 @@ Figure hubble_figure(const ChartInput& input, double width);
 Figure residual_figure(const ChartInput& input, double width);
 Figure standardisation_figure(const ChartInput& input, double width);
 Figure population_figure(const ChartInput& input, double width);
+Figure calibrator_figure(const ChartInput& input, double width);
 Figure scan_figure(const ChartInput& input, double width);
 Figure budget_figure(const ChartInput& input, double width);
 

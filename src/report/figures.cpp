@@ -22,7 +22,8 @@ FigureResult write_figures(const FigureOptions& options) {
   FigureResult result;
   for (const Figure& figure :
        {hubble_figure(input, width), residual_figure(input, width), standardisation_figure(input, width),
-        population_figure(input, width), scan_figure(input, width), budget_figure(input, width)}) {
+        population_figure(input, width), calibrator_figure(input, width), scan_figure(input, width),
+        budget_figure(input, width)}) {
     if (!figure.possible) continue;
     for (const bool pdf : {false, true}) {
       const std::filesystem::path path = options.output_folder / (figure.name + (pdf ? ".pdf" : ".svg"));

@@ -96,8 +96,9 @@ void write_panel_files(const std::vector<std::string>& panels, const std::filesy
 }
 
 std::vector<ChartSection> all_sections(const ChartInput& input) {
-  return {hubble_section(input),  residual_section(input), standardisation_section(input), population_section(input),
-          choices_section(input), budget_section(input),   influence_section(input),       velocity_section(input)};
+  return {hubble_section(input),     residual_section(input),  standardisation_section(input),
+          population_section(input), ladder_section(input),    choices_section(input),
+          budget_section(input),     influence_section(input), velocity_section(input)};
 }
 
 }  // namespace

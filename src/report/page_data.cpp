@@ -101,6 +101,7 @@ void add_derived(const RunTables& run, const SupernovaRows& all, json& columns) 
 
 json answer_data(const Answer& answer) {
   json facts = json::array();
+  if (!answer.absolute_magnitude.empty()) facts.push_back({"M_B", answer.absolute_magnitude});
   for (const auto& [label, value] : answer.facts) facts.push_back({label, value});
   return {{"known", answer.known},        {"blind", answer.blind},    {"value", answer.symbol_value},
           {"stat", answer.statistical},   {"sys", answer.systematic}, {"total", answer.total},

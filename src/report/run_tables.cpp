@@ -60,6 +60,10 @@ void read_summary(const std::filesystem::path& path, RunSummary& summary) {
     summary.blind = ab->value("blind", json(false)) == json(true);
   }
   summary.hubble_constant = measured(root, "h0");
+  summary.absolute_magnitude = measured(root, "absolute_magnitude");
+  if (const auto join = root.find("join"); join != root.end() && join->is_object()) {
+    if (const double n = number(*join, "calibrators"); n == n) summary.calibrators = static_cast<long long>(n);
+  }
   if (const double n = number(root, "supernovae"); n == n) summary.supernovae = static_cast<long long>(n);
   summary.scatter_mag = number(root, "scatter_mag");
   summary.z_min = number(root, "z_min");
@@ -135,6 +139,8 @@ RunTables read_run_tables(const std::filesystem::path& folder) {
   run.calibration_derivatives = read_result_table(folder, "calibration-derivatives");
   run.influence = read_result_table(folder, "influence");
   run.fields = read_result_table(folder, "fields");
+  run.join = read_result_table(folder, "join");
+  run.calibrators = read_result_table(folder, "calibrators");
   if (!has_summary && !run.fits && !run.sample && !run.standardised) {
     throw InputError({folder.string(), std::nullopt, ""},
                      "holds no result of a run (no summary.json, lightcurve-fits.ecsv, sample.ecsv)",

@@ -31,7 +31,9 @@ struct RunSummary {
   double error_stat = std::numeric_limits<double>::quiet_NaN();
   double error_sys = std::numeric_limits<double>::quiet_NaN();
   bool blind = false;
-  Measured hubble_constant;  ///< Only where the run joined a calibrated M_B [km/s/Mpc].
+  Measured hubble_constant;              ///< Only where the run joined a calibrated M_B, or calibrators [km/s/Mpc].
+  Measured absolute_magnitude;           ///< M_B [mag], and
+  std::optional<long long> calibrators;  ///< how many supernovae it is from, where it is from calibrators.
   std::optional<long long> supernovae;
   double scatter_mag = std::numeric_limits<double>::quiet_NaN();
   double z_min = std::numeric_limits<double>::quiet_NaN();
@@ -55,7 +57,7 @@ struct RunTables {
   std::filesystem::path folder;
   RunSummary summary;
   std::optional<Table> fits, sample, standardised, zrange_grid, scans, budget, calibration_derivatives, influence,
-      fields;
+      fields, join, calibrators;
 };
 
 /// Reads what is there. Throws InputError if the folder holds none of the result tables, or if one is malformed.

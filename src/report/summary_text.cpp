@@ -78,6 +78,7 @@ std::string summary_text(const SummaryTextOptions& options) {
   const auto width = static_cast<std::size_t>(std::max(40, options.width));
   std::string out = answer_line(answer) + "\n";
   if (!answer.hubble_constant.empty()) out += "H0  = " + answer.hubble_constant + " km/s/Mpc\n";
+  if (!answer.absolute_magnitude.empty()) out += "M_B = " + answer.absolute_magnitude + "\n";
   std::string facts;
   for (const auto& [label, value] : answer.facts) facts += (facts.empty() ? "" : ", ") + label + " " + value;
   if (!facts.empty()) wrap(harmless(facts), "", width, out);

@@ -11,7 +11,7 @@ import xml.etree.ElementTree
 
 HERE = os.path.dirname(os.path.abspath(__file__))
 TOOL = os.path.join(os.environ.get("THIRDRUNG_TOOLS", "tools"), "report_page")
-NAMES = ["hubble", "residuals", "standardisation", "populations", "scans", "budget"]
+NAMES = ["hubble", "residuals", "standardisation", "populations", "calibrators", "scans", "budget"]
 MILLIMETRES = {"one": 88, "two": 180}
 
 
@@ -55,7 +55,7 @@ def main():
         for width in ("one", "two"):
             out = os.path.join(top, width)
             files = subprocess.run([TOOL, "figures", run, out, width], check=True, capture_output=True).stdout.decode().split()
-            check(sorted(os.path.basename(f) for f in files) == sorted(n + e for n in NAMES for e in (".svg", ".pdf")), "six figures as SVG and PDF, %s" % width)
+            check(sorted(os.path.basename(f) for f in files) == sorted(n + e for n in NAMES for e in (".svg", ".pdf")), "seven figures as SVG and PDF, %s" % width)
             again = os.path.join(top, width + "-again")
             subprocess.run([TOOL, "figures", run, again, width], check=True, stdout=subprocess.DEVNULL)
             for name in NAMES:
