@@ -18,6 +18,14 @@ using nlohmann::json;
 namespace {
 
 constexpr double largest_offset = 0.02;
+constexpr double largest_magnitude = 0.1;
+
+/// Even between -1 and 1, fixed by the text.
+double drawn_from(const std::string& text) {
+  const std::string hash = sha256_of_text(text);
+  const double unit = static_cast<double>(std::stoull(hash.substr(0, 13), nullptr, 16)) / 4503599627370496.0;  // 2^52
+  return 2.0 * unit - 1.0;
+}
 
 fs::path record_file(const fs::path& folder) {
   return folder / "unblinding.json";
@@ -32,9 +40,11 @@ std::string digest_of_all(const RunFile& run) {
 }  // namespace
 
 double hidden_offset(const std::string& phrase) {
-  const std::string hash = sha256_of_text("thirdrung blind offset: " + phrase);
-  const double unit = static_cast<double>(std::stoull(hash.substr(0, 13), nullptr, 16)) / 4503599627370496.0;  // 2^52
-  return largest_offset * (2.0 * unit - 1.0);
+  return largest_offset * drawn_from("thirdrung blind offset: " + phrase);
+}
+
+double hidden_magnitude(const std::string& phrase) {
+  return largest_magnitude * drawn_from("thirdrung blind magnitude: " + phrase);
 }
 
 std::optional<Unblinding> read_unblinding(const fs::path& folder) {
@@ -76,6 +86,10 @@ bool is_blind(const RunFile& run) {
 
 double offset_in_force(const RunFile& run) {
   return is_blind(run) ? hidden_offset(run.phrase) : 0.0;
+}
+
+double magnitude_in_force(const RunFile& run) {
+  return is_blind(run) ? hidden_magnitude(run.phrase) : 0.0;
 }
 
 }  // namespace thirdrung

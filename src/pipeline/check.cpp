@@ -7,6 +7,7 @@
 #include <set>
 
 #include "base/error.h"
+#include "pipeline/calibrators.h"
 #include "pipeline/inputs.h"
 #include "template/template_file.h"
 
@@ -91,6 +92,26 @@ void check_systematics(const RunFile& run, const PassbandCatalogue& catalogue) {
   }
 }
 
+/// Calibrators and their distances, and what their light curves are.
+void check_join(const RunFile& run, const SurveySupernovae& supernovae, const Photometry& photometry,
+                CheckResult& result) {
+  if (!run.join.calibrators.given()) return;
+  const CalibratorList list = read_run_calibrators(run);
+  check_calibrators(run, list, supernovae, read_redshift_options(run));
+  const Eigen::VectorXd& modulus = list.distances.modulus;
+  result.found.push_back(fmt::format("calibrators {}: {} supernovae in {} hosts, distance moduli {:.2f} to {:.2f}",
+                                     run.join.calibrators.written, list.calibrators.size(), list.distances.hosts.size(),
+                                     modulus.minCoeff(), modulus.maxCoeff()));
+  std::set<std::string> observed;
+  for (const LightCurve& one : photometry.light_curves) observed.insert(one.supernova);
+  for (const Calibrator& one : list.calibrators) {
+    if (!observed.contains(one.supernova))
+      result.remarks.push_back(fmt::format("The calibrator {} has no usable photometry.", one.supernova));
+  }
+  if (list.calibrators.size() < few_calibrators)
+    result.remarks.push_back(fmt::format("There are only {} calibrators.", list.calibrators.size()));
+}
+
 }  // namespace
 
 CheckResult check_run(const RunFile& run) {
@@ -117,6 +138,7 @@ CheckResult check_run(const RunFile& run) {
       result.remarks.push_back(
           fmt::format("{}: {} supernovae have no photometry.", survey.name, count.without_photometry));
   }
+  check_join(run, supernovae, photometry, result);
   add_set_aside(supernovae.set_aside, result.remarks);
   add_set_aside(photometry.set_aside, result.remarks);
   add_uncovered(trained.model, catalogue, surveys, result.remarks);

@@ -77,6 +77,8 @@ std::vector<InputChecksum> checksums_of_later_inputs(const RunFile& run) {
   std::vector<InputChecksum> list;
   add(list, run.redshift.velocity_field);
   for (const SystematicInput& systematic : run.systematics) add(list, systematic.file);
+  add(list, run.join.calibrators);
+  add(list, run.join.covariance);
   return list;
 }
 

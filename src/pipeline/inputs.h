@@ -40,7 +40,7 @@ struct InputChecksum {
 };
 
 /// Checksums of the files that the light curves depend on: template, passbands, standard star, photometry, supernovae,
-/// dust maps; and of those that later stages add: velocity fields, other templates.
+/// dust maps; and of those that later stages add: velocity fields, other templates, calibrators.
 std::vector<InputChecksum> checksums_of_lightcurve_inputs(const RunFile& run);
 std::vector<InputChecksum> checksums_of_later_inputs(const RunFile& run);
 

@@ -103,10 +103,12 @@ struct ScansInput {
   double z_min = 0.01, z_max = 0.2;
 };
 
-/// [join]: from a_B to H0 by a calibrated absolute magnitude.
+/// [join]: to H0, from a_B and a calibrated absolute magnitude, or from calibrators of the run.
 struct JoinInput {
   bool wanted = false;
   double m_b = 0.0, m_b_error = 0.0;  ///< [mag].
+  InputFile calibrators;              ///< If given: the table of calibrators and their distances, instead of m_b;
+  InputFile covariance;               ///< and the covariance of the latter, optional.
 };
 
 /// [report].

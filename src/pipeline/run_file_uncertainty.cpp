@@ -185,16 +185,27 @@ void read_join_section(RunSection section, RunFile& run) {
   JoinInput& join = run.join;
   const auto m_b = section.optional_number("m_b");
   const auto m_b_error = section.optional_number("m_b_error");
+  join.calibrators = section.optional_path("calibrators");
+  join.covariance = section.optional_path("covariance");
   section.done();
   join.wanted = !section.keys().empty();
   if (!join.wanted) return;
+  if (!run.blind_given) run.blind = true;
+  if (join.covariance.given() && !join.calibrators.given()) {
+    throw InputError(section.place("covariance"), "[join] has a covariance of distances, but no calibrators",
+                     "give calibrators, or leave it out");
+  }
+  if (join.calibrators.given()) {
+    if (!m_b && !m_b_error) return;
+    throw InputError(section.place(m_b ? "m_b" : "m_b_error"),
+                     "[join] has both an absolute magnitude m_b and calibrators", "keep one of the two");
+  }
   if (!m_b || !m_b_error || !(*m_b_error > 0)) {
-    throw InputError(section.place(m_b ? "m_b_error" : "m_b"), "[join] needs m_b and a positive m_b_error",
-                     "give both");
+    throw InputError(section.place(m_b ? "m_b_error" : "m_b"),
+                     "[join] needs m_b and a positive m_b_error, or calibrators", "give them");
   }
   join.m_b = *m_b;
   join.m_b_error = *m_b_error;
-  if (!run.blind_given) run.blind = true;
 }
 
 void read_report_section(RunSection section, RunFile& run) {

@@ -8,6 +8,7 @@
 #include "base/parallel.h"
 #include "base/text.h"
 #include "pipeline/blinding.h"
+#include "pipeline/calibrators.h"
 #include "pipeline/inputs.h"
 #include "pipeline/output_folder.h"
 #include "pipeline/stage_steps.h"
@@ -84,13 +85,15 @@ void run_stages(const RunFile& run, const RunOptions& options) {
   const auto inputs_of_fits = checksums_of_lightcurve_inputs(run);
   auto inputs = inputs_of_fits;
   for (const InputChecksum& one : checksums_of_later_inputs(run)) inputs.push_back(one);
+  check_calibrators(run);
   OutputFolder folder(run.output);
   if (options.afresh)
     folder.clear();
   else
     folder.refuse_changed_inputs(inputs);
   folder.remember_inputs(inputs);
-  const StageContext context{run, folder, digest(inputs_of_fits), digest(inputs), offset_in_force(run)};
+  const StageContext context{
+      run, folder, digest(inputs_of_fits), digest(inputs), offset_in_force(run), magnitude_in_force(run)};
   for (const Stage stage : stages_between(options)) do_stage(context, stage, options);
   write_summary(run, folder, inputs);
 }

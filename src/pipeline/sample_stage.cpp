@@ -9,6 +9,7 @@
 #include "base/chi_square.h"
 #include "base/error.h"
 #include "lightcurve/results.h"
+#include "pipeline/calibrators.h"
 #include "pipeline/inputs.h"
 #include "pipeline/table_tools.h"
 #include "sky/position.h"
@@ -32,6 +33,7 @@ struct Member {
   std::string remarks;
   Redshifts redshifts;
   std::string unusable;  ///< Why the rules are not even asked.
+  bool calibrator = false;
 };
 
 StandardisationDatum datum_of(const FittedSupernova& one) {
@@ -230,9 +232,10 @@ void write_fit(SampleWriter& out, const std::vector<CutSubject>& subjects) {
 }
 
 void write_rules(SampleWriter& out, const std::vector<Member>& members, const CutResult& cuts) {
-  std::vector<bool> used;
+  std::vector<bool> used, calibrator;
   std::vector<std::string> first, all;
   for (std::size_t i = 0; i < members.size(); ++i) {
+    calibrator.push_back(members[i].calibrator);
     const std::string& unusable = members[i].unusable;
     used.push_back(unusable.empty() && cuts.used[i]);
     first.push_back(unusable.empty() ? cuts.first_rule(i) : unusable);
@@ -241,24 +244,31 @@ void write_rules(SampleWriter& out, const std::vector<Member>& members, const Cu
   out.table.add_flags("used", std::move(used), "in the intercept");
   out.table.add_strings("removed_by", std::move(first), "first rule that removes it");
   out.table.add_strings("removed_by_all", std::move(all), "every rule that removes it");
+  if (std::find(calibrator.begin(), calibrator.end(), true) != calibrator.end())
+    out.table.add_flags("calibrator", std::move(calibrator), "its host has a known distance; not in the Hubble flow");
   out.texts("remarks", "", [](const Member& m) { return m.remarks; });
 }
 
 }  // namespace
 
 SampleTables make_sample(const RunFile& run, const Table& fits) {
-  return make_sample(run, fits, read_all_supernovae(run).supernovae, read_redshift_options(run));
+  return make_sample(run, fits, read_all_supernovae(run).supernovae, read_redshift_options(run), calibrator_names(run));
 }
 
 SampleTables make_sample(const RunFile& run, const Table& fits, const std::vector<Supernova>& supernovae,
-                         const RedshiftOptions& redshifts) {
+                         const RedshiftOptions& redshifts, const std::set<std::string>& calibrators) {
   std::vector<FittedSupernova> fitted = read_fits(fits);
   std::erase_if(fitted, [](const FittedSupernova& one) { return !std::isfinite(one.fit.m_b); });
   std::vector<Member> members = grouped(fitted);
   for (Member& member : members) combine_fits(member);
   add_redshifts(members, supernovae, redshifts);
-  std::vector<CutSubject> subjects;
-  for (const Member& member : members) subjects.push_back(subject_of(member));
+  std::vector<CutSubject> subjects, flow;
+  for (Member& member : members) {
+    member.calibrator = calibrators.contains(member.datum.name);
+    if (member.calibrator) member.unusable = "calibrator";
+    subjects.push_back(subject_of(member));
+    if (!member.calibrator) flow.push_back(subjects.back());
+  }
   const CutResult cuts = apply_cuts(subjects, cut_rules(run.cuts));
   SampleWriter out(members);
   out.texts("supernova", "", [](const Member& m) { return m.datum.name; });
@@ -268,7 +278,7 @@ SampleTables make_sample(const RunFile& run, const Table& fits, const std::vecto
   write_host(out, run.standardisation.options.host_mass);
   write_fit(out, subjects);
   write_rules(out, members, cuts);
-  return {std::move(out.table), cuts_table(cuts)};
+  return {std::move(out.table), cuts_table(calibrators.empty() ? cuts : apply_cuts(flow, cut_rules(run.cuts)))};
 }
 
 std::vector<CutSubject> cut_subjects(const Table& sample) {

@@ -16,7 +16,8 @@ struct StageContext {
   OutputFolder& folder;
   std::string lightcurve_inputs;  ///< Digest of the files that light curves depend on.
   std::string all_inputs;         ///< Digest of every input file.
-  double hidden_offset = 0.0;     ///< Of a blind run.
+  double hidden_offset = 0.0;     ///< Of a blind run, in a_B,
+  double hidden_magnitude = 0.0;  ///< and in the magnitudes of calibrators [mag].
 };
 
 /// How one stage is done.

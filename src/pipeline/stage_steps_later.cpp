@@ -1,8 +1,10 @@
 #include <fmt/format.h>
 
+#include "pipeline/blinding.h"
 #include "pipeline/covariance_stage.h"
 #include "pipeline/intercept_stage.h"
 #include "pipeline/join_stage.h"
+#include "pipeline/ladder_stage.h"
 #include "pipeline/scan_stage.h"
 #include "pipeline/stage_steps.h"
 #include "pipeline/standardisation_stage.h"
@@ -14,6 +16,7 @@ namespace {
 
 constexpr const char* coefficients_file = "standardisation-covariance.fits";
 constexpr const char* shifts_file = "systematic-shifts.fits";
+constexpr const char* block_file = "ladder-block.fits";
 
 CoefficientCovariance coefficients_in(const StageContext& context) {
   if (content_of(context, coefficients_file).empty()) return {};
@@ -42,6 +45,21 @@ StandardisationCoefficients coefficients_from(const Table& table) {
     if (names[i] == "gamma") out.gamma = values[i];
     if (names[i] == "sigma_int") out.sigma_int = values[i];
   }
+  return out;
+}
+
+LadderInput ladder_input(const StageContext& context) {
+  LadderInput out;
+  out.sample = stage_table(context, "sample.ecsv", "select");
+  if (!content_of(context, "set-aside.ecsv").empty()) out.set_aside = stage_table(context, "set-aside.ecsv", "fit");
+  out.magnitudes = read_magnitudes(stage_table(context, "magnitudes.ecsv", "standardise"));
+  out.coefficients = coefficients_from(stage_table(context, "standardisation.ecsv", "standardise"));
+  out.coefficient_covariance = coefficients_in(context);
+  if (!context.run.systematics.empty()) {
+    stage_file(context, shifts_file, "shift");
+    out.shifts = read_shifts(context.folder.path() / shifts_file);
+  }
+  out.hidden_magnitude = context.hidden_magnitude;
   return out;
 }
 
@@ -118,11 +136,23 @@ StageStep join_step() {
   StageStep step;
   step.wanted = [](const RunFile& run) { return run.join.wanted; };
   step.depends_on = [](const StageContext& context) {
-    return settings_of(context.run, {"join"}) + content_of(context, "intercept.ecsv");
+    const std::string join = settings_of(context.run, {"join"}) + content_of(context, "intercept.ecsv");
+    if (!context.run.join.calibrators.given()) return join;
+    return join + settings_of(context.run, {"cuts", "standardisation"}) + covariance_depends_on(context) +
+           context.all_inputs + content_of(context, "sample.ecsv") + content_of(context, "standardisation.ecsv") +
+           content_of(context, "set-aside.ecsv") + fmt::format("\n{}", context.hidden_magnitude);
   };
   step.make = [](const StageContext& context, const std::string&) {
     std::vector<std::string> files;
-    write_result(context, join_of(context.run, stage_table(context, "intercept.ecsv", "intercept")), "join", files);
+    if (!context.run.join.calibrators.given()) {
+      write_result(context, join_of(context.run, stage_table(context, "intercept.ecsv", "intercept")), "join", files);
+      return files;
+    }
+    const LadderResult result = join_calibrators(context.run, ladder_input(context));
+    write_result(context, result.join, "join", files);
+    write_result(context, result.calibrators, "calibrators", files);
+    write_ladder_block(result.block, result.solution, is_blind(context.run), context.folder.path() / block_file);
+    files.emplace_back(block_file);
     return files;
   };
   return step;

@@ -5,6 +5,7 @@
 #include <cmath>
 
 #include "base/error.h"
+#include "pipeline/calibrators.h"
 #include "pipeline/sample_stage.h"
 #include "pipeline/table_tools.h"
 #include "standardisation/ordinary.h"
@@ -153,7 +154,9 @@ StandardisationTables standardise_sample(const RunFile& run, const Table& sample
   const CutLimits wide = widest(run);
   quality.z_min = wide.z_min;
   quality.z_max = wide.z_max;
-  const std::vector<bool> chosen = passing(subjects, wide);
+  std::vector<bool> chosen = passing(subjects, wide);
+  const std::vector<bool> calibrator = calibrator_rows(sample);
+  for (std::size_t i = 0; i < chosen.size(); ++i) chosen[i] = chosen[i] && !calibrator[i];
   const std::vector<bool> good = both(chosen, passing(subjects, quality));
   std::vector<bool> in_sample;
   for (std::size_t i = 0; i < chosen.size(); ++i) {

@@ -20,7 +20,7 @@ struct StandardisationTables {
 };
 
 /// Fits the standardisation to the sample's used supernovae and applies it to every trusted one within the redshifts
-/// that scans reach.
+/// that scans reach. Calibrators are left to the join (calibrators.h).
 ///
 /// Moduli are 5 log10(c H0 d_L / c), so that the parameter `intercept` is -5 a_B.
 /// @param hidden_offset added to a_B: the magnitudes carry -5 times it, the parameter `intercept` too.

@@ -88,10 +88,22 @@ void add_cuts(ordered_json& root, const fs::path& folder) {
 void add_join(ordered_json& root, const fs::path& folder) {
   const auto table = result(folder, "join");
   if (!table) return;
-  for (const auto& [name, row] : rows_by_name(*table, "quantity")) {
+  auto rows = rows_by_name(*table, "quantity");
+  for (const auto& [name, row] : rows) {
     if (name == "h0" || name == "m_b")
       root[name == "m_b" ? "absolute_magnitude" : name] = {{"value", number(row.value)}, {"error", number(row.error)}};
   }
+  if (!rows.contains("calibrators")) return;
+  ordered_json shares;
+  for (const char* name : {"calibrators", "hubble_flow", "coefficients", "systematics"})
+    shares[name] = number(rows[std::string("share_of_") + name].value);
+  root["join"] = {{"calibrators", static_cast<std::int64_t>(rows["calibrators"].value)},
+                  {"hosts", static_cast<std::int64_t>(rows["hosts"].value)},
+                  {"correlation", number(rows["correlation"].value)},
+                  {"calibrator_scatter_mag", number(rows["calibrator_scatter"].value)},
+                  {"chi2", number(rows["chi2"].value)},
+                  {"dof", static_cast<std::int64_t>(rows["dof"].value)},
+                  {"shares", shares}};
 }
 
 ordered_json inputs_json(const std::vector<InputChecksum>& inputs) {

@@ -13,6 +13,7 @@
 #include "base/parallel.h"
 #include "base/progress.h"
 #include "lightcurve/results.h"
+#include "pipeline/calibrators.h"
 #include "pipeline/sample_stage.h"
 #include "pipeline/standardisation_stage.h"
 #include "pipeline/table_tools.h"
@@ -36,7 +37,8 @@ struct Baseline {
   const RunFile& run;
   const RunInputs& inputs;
   Table fits;                      ///< Of the supernovae in `names`.
-  std::vector<std::string> names;  ///< In the order of the shifts.
+  std::vector<std::string> names;  ///< In the order of the shifts: the Hubble flow, then calibrators.
+  Eigen::Index in_flow = 0;        ///< So many of them are of the Hubble flow.
   std::vector<bool> used;          ///< One each: in the fit of the coefficients.
   StandardisationCoefficients coefficients;
   std::vector<FlowSupernova> flow;
@@ -135,22 +137,36 @@ StandardisationCoefficients fitted(const RunFile& run, const std::vector<Standar
 }
 
 Baseline make_baseline(const RunFile& run, const RunInputs& inputs, const Table& fits, const Table& sample,
-                       const Table& magnitudes) {
-  Baseline base{run, inputs, {}, magnitudes.strings("supernova"), {}, {}, {}};
+                       const std::vector<std::string>& names, Eigen::Index in_flow) {
+  Baseline base{run, inputs, {}, names, in_flow, {}, {}, {}};
   const std::set<std::string> wanted(base.names.begin(), base.names.end());
   std::vector<bool> keep;
   for (const std::string& name : fits.strings("supernova")) keep.push_back(wanted.contains(name));
   base.fits = rows_of(fits, keep);
   std::map<std::string, bool> used;
-  const auto names = sample.strings("supernova");
+  const auto listed = sample.strings("supernova");
   const auto flags = sample.flags("used");
-  for (std::size_t i = 0; i < names.size(); ++i) used[names[i]] = flags[i];
+  for (std::size_t i = 0; i < listed.size(); ++i) used[listed[i]] = flags[i];
   for (const std::string& name : base.names) base.used.push_back(used[name]);
   const auto data =
       data_in_order(run, make_sample(run, base.fits, inputs.supernovae, inputs.redshifts).sample, base.names);
   base.coefficients = fitted(run, data, base.used);
   base.flow = flow_of(data, base.coefficients, run.standardisation.options.host_mass);
   return base;
+}
+
+/// Of the Hubble flow, in which redshift and expansion count; and of calibrators, whose distance has no part in them.
+Eigen::VectorXd magnitude_shift(const Baseline& base, const std::vector<FlowSupernova>& moved,
+                                const FlowOptions& moved_flow) {
+  const auto count = static_cast<std::size_t>(base.in_flow);
+  Eigen::VectorXd out(static_cast<Eigen::Index>(moved.size()));
+  out.head(base.in_flow) = effective_shift(std::span(base.flow).first(count), base.run.intercept.options.flow,
+                                           std::span(moved).first(count), moved_flow);
+  for (Eigen::Index i = base.in_flow; i < out.size(); ++i) {
+    const auto k = static_cast<std::size_t>(i);
+    out[i] = moved[k].m_b_standardised - base.flow[k].m_b_standardised;
+  }
+  return out;
 }
 
 SystematicShift shift_of(const Baseline& base, const MovedInput& moved) {
@@ -166,7 +182,7 @@ SystematicShift shift_of(const Baseline& base, const MovedInput& moved) {
   out.kind = moved.kind;
   out.size = moved.size;
   out.unit = moved.unit;
-  out.shift = effective_shift(base.flow, base.run.intercept.options.flow, flow, run.intercept.options.flow);
+  out.shift = magnitude_shift(base, flow, run.intercept.options.flow);
   if (moved.scaled_after) out.shift *= moved.size;
   return out;
 }
@@ -206,8 +222,11 @@ void make_names_unique(std::vector<SystematicShift>& shifts) {
 
 SystematicShifts find_systematic_shifts(const RunFile& run, const Table& fits, const Table& sample,
                                         const Table& magnitudes) {
-  const RunInputs inputs = read_run_inputs(run, magnitudes.strings("supernova"));
-  const Baseline base = make_baseline(run, inputs, fits, sample, magnitudes);
+  std::vector<std::string> names = magnitudes.strings("supernova");
+  const auto in_flow = static_cast<Eigen::Index>(names.size());
+  for (std::string& name : good_calibrators(run, sample)) names.push_back(std::move(name));
+  const RunInputs inputs = read_run_inputs(run, names);
+  const Baseline base = make_baseline(run, inputs, fits, sample, names, in_flow);
   std::vector<MovedInput> all;
   for (const SystematicInput& input : run.systematics) {
     for (MovedInput& one : moved_inputs(input, inputs)) all.push_back(std::move(one));

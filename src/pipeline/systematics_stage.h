@@ -21,7 +21,8 @@ struct SystematicShifts {
 /// Whatever an input touches is done again with it moved: light curves fitted, redshifts, standardisation; the set of
 /// supernovae stays. A passband's zero point or wavelength moves the light curves in that passband, and, through the
 /// template's stored response to its training set, every other one with it. alpha, beta, gamma and sigma_int are
-/// fitted again, or held (RunFile::refit_with_systematics).
+/// fitted again, or held (RunFile::refit_with_systematics). Calibrators that pass the quality rules are moved along,
+/// after the Hubble flow in the order of the shifts.
 /// @param fits table "lightcurve-fits"; @param sample table "sample"; @param magnitudes table "magnitudes".
 SystematicShifts find_systematic_shifts(const RunFile& run, const Table& fits, const Table& sample,
                                         const Table& magnitudes);

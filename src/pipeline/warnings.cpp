@@ -5,6 +5,7 @@
 
 #include "base/text.h"
 #include "pipeline/blinding.h"
+#include "pipeline/calibrators.h"
 #include "pipeline/summary.h"
 #include "tables/read_write.h"
 
@@ -108,6 +109,37 @@ void of_intercept(const fs::path& folder, std::vector<std::string>& out) {
                               chi2, dof, probability < 0.5 ? "do not explain" : "are too large for"));
 }
 
+/// Calibrators left out; too few of them; distances and magnitudes that contradict each other.
+void of_calibrators(const fs::path& folder, std::vector<std::string>& out) {
+  const auto table = result(folder, "calibrators");
+  if (!table) return;
+  const auto names = table->strings("supernova"), why_not = table->strings("why_not");
+  const auto used = table->flags("used");
+  const auto residual = table->reals("residual"), error = table->reals("absolute_magnitude_error");
+  std::vector<std::size_t> left_out, far;
+  for (std::size_t i = 0; i < used.size(); ++i) {
+    if (!used[i]) left_out.push_back(i);
+    if (used[i] && std::abs(residual[i]) > 3 * error[i]) far.push_back(i);
+  }
+  const std::size_t in_use = used.size() - left_out.size();
+  if (in_use < few_calibrators)
+    out.push_back(fmt::format("Only {}: one bad distance or light curve would carry H0.",
+                              counted(in_use, "calibrator", "calibrators")));
+  if (!left_out.empty()) {
+    constexpr std::size_t most = 4;
+    std::string list;
+    for (std::size_t k = 0; k < std::min(most, left_out.size()); ++k)
+      list += fmt::format("{}{}: {}", k == 0 ? "" : "; ", names[left_out[k]], why_not[left_out[k]]);
+    out.push_back(fmt::format("{} not used ({}{}); calibrators.ecsv has them all.",
+                              counted(left_out.size(), "calibrator is", "calibrators are"), list,
+                              left_out.size() > most ? "; ..." : ""));
+  }
+  if (!far.empty())
+    out.push_back(fmt::format("{} more than 3 errors from M_B (the first: {}, by {:+.2f} mag).",
+                              counted(far.size(), "calibrator lies", "calibrators lie"), names[far.front()],
+                              residual[far.front()]));
+}
+
 void of_unblinding(const RunFile& run, std::vector<std::string>& out) {
   const auto record = read_unblinding(run.output);
   if (!record) return;
@@ -125,6 +157,7 @@ std::vector<std::string> run_warnings(const RunFile& run, const fs::path& folder
   of_fits(folder, out);
   of_sample(folder, out);
   of_standardisation(folder, out);
+  of_calibrators(folder, out);
   of_unblinding(run, out);
   return out;
 }

@@ -21,3 +21,19 @@ TEST_CASE("the hidden offset is fixed by the phrase and spread evenly over its r
   CHECK(std::abs(sum / count) < 4 * 0.02 / std::sqrt(3.0 * count));
   CHECK(squares / count == Approx(0.0004 / 3).epsilon(4 * std::sqrt(0.8 / count)));
 }
+
+TEST_CASE("the hidden magnitude of calibrators is a constant of its own") {
+  CHECK(hidden_magnitude("a") == hidden_magnitude("a"));
+  double squares = 0, product = 0;
+  constexpr int count = 4000;
+  for (int i = 0; i < count; ++i) {
+    const std::string phrase = "phrase " + std::to_string(i);
+    const double magnitude = hidden_magnitude(phrase);
+    REQUIRE(std::abs(magnitude) <= 0.1);
+    squares += magnitude * magnitude / count;
+    product += magnitude * hidden_offset(phrase) / count;
+  }
+  // As above; and it does not follow the offset in a_B, or the two could cancel in H0.
+  CHECK(squares == Approx(0.01 / 3).epsilon(4 * std::sqrt(0.8 / count)));
+  CHECK(std::abs(product) < 4 * 0.1 * 0.02 / 3 / std::sqrt(count));
+}

@@ -134,6 +134,8 @@ TEST_CASE("values that make no sense are refused") {
   CHECK_THAT(fault(smallest + "[intercept]\nz_min = 0.3\n"), Contains("not below z_max"));
   CHECK_THAT(fault(smallest + "[intercept]\nomega_m = 0.3\n"), Contains("no meaning"));
   CHECK_THAT(fault(smallest + "[join]\nm_b = -19\n"), Contains("m_b_error"));
+  CHECK_THAT(fault(smallest + "[join]\nm_b = -19\ncalibrators = \"c.ecsv\"\n"), Contains("keep one of the two"));
+  CHECK_THAT(fault(smallest + "[join]\ncovariance = \"c.fits\"\n"), Contains("no calibrators"));
   CHECK_THAT(fault(smallest + "[milky_way]\nsource = \"map\"\n"), Contains("needs a map"));
   CHECK_THAT(fault(smallest + "[redshift]\nvelocity = \"grid\"\n"), Contains("velocity_field"));
   CHECK_THAT(fault(smallest + "[[survey]]\nname = \"north\"\nphotometry = \"a\"\nsupernovae = \"b\"\n"),
@@ -157,4 +159,12 @@ TEST_CASE("the normal form of a section does not depend on comments, blanks and 
   const RunFile two = read(smallest + "[cuts]\n\ns_min = 0.8\nc_max   = 0.2\n");
   CHECK(one.sections.at("cuts") == two.sections.at("cuts"));
   CHECK(one.sections.at("cuts") != read(smallest).sections.at("cuts"));
+}
+
+TEST_CASE("a run that joins by calibrators is blind, and names their files") {
+  const RunFile run = read(smallest + "[join]\ncalibrators = \"c.ecsv\"\ncovariance = \"c.fits\"\n");
+  CHECK(run.join.wanted);
+  CHECK(run.blind);
+  CHECK(run.join.calibrators.written == "c.ecsv");
+  CHECK(run.join.covariance.written == "c.fits");
 }
