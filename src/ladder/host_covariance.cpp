@@ -157,6 +157,7 @@ Eigen::MatrixXd read_host_covariance(const std::filesystem::path& path, const st
   check_values(matrix);
   check_positive_definite(matrix);
   std::vector<Eigen::Index> places;
+  places.reserve(hosts.size());
   for (const std::string& host : hosts)
     places.push_back(std::find(matrix.hosts.begin(), matrix.hosts.end(), host) - matrix.hosts.begin());
   const Eigen::MatrixXd ordered = matrix.values(places, places);

@@ -125,6 +125,7 @@ Magnitudes calibrator_magnitudes(const RunFile& run, const Table& sample, const 
   const auto all = standardisation_data(run, sample, std::vector<bool>(sample.rows(), true));
   const auto places = places_by_name(sample);
   std::vector<StandardisationDatum> data;
+  data.reserve(names.size());
   for (const std::string& name : names) data.push_back(all[places.at(name)]);
   const auto standardised = standardise(data, coefficients, run.standardisation.options.host_mass);
   Magnitudes out;

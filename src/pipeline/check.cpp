@@ -145,7 +145,9 @@ CheckResult check_run(const RunFile& run) {
   check_output(run.output);
   result.found.push_back(fmt::format("output      {}", run.output.string()));
   if (run.blind)
-    result.remarks.emplace_back("The run is blind: a_B and H0 carry a hidden offset until it is unblinded.");
+    result.remarks.emplace_back(run.join.calibrators.given()
+                                    ? "The run is blind: a_B, M_B and H0 carry hidden constants until it is unblinded."
+                                    : "The run is blind: a_B and H0 carry a hidden offset until it is unblinded.");
   return result;
 }
 

@@ -152,7 +152,9 @@ Answer make_answer(const RunTables& run) {
   add_facts(summary, answer);
   if (answer.blind) {
     answer.qualifications.push_back(
-        "This run is blind: the value shown carries a hidden offset; errors and differences are true.");
+        answer.absolute_magnitude.empty()
+            ? "This run is blind: the value shown carries a hidden offset; errors and differences are true."
+            : "This run is blind: a_B, M_B and H0 carry hidden constants; errors and differences are true.");
   }
   for (const std::string& sentence :
        {leading_error(run), sides_of_the_ladder(run), choices(run), single_supernova(run)}) {

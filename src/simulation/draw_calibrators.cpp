@@ -22,7 +22,7 @@ SupernovaTruth draw_place(const SimulationOptions& options, const SimulatedSurve
                           const VolumeRedshifts& redshifts, std::uint64_t number) {
   for (std::uint64_t attempt = 0; attempt < most_attempts; ++attempt) {
     RandomStream stream(options.seed, {host_draws, number, attempt});
-    const SupernovaTruth place = draw_supernova(options, survey, redshifts, stream);
+    SupernovaTruth place = draw_supernova(options, survey, redshifts, stream);
     if (place.z_helio > smallest_redshift) return place;
   }
   throw InputError({options.origin, {}, "calibrators"}, "no host has a positive redshift",

@@ -190,11 +190,13 @@ Table host_covariance_table(const SimulatedSample& sample, const SimulationOptio
   }
   const Eigen::MatrixXd covariance = host_covariance(options);
   std::vector<std::string> names;
+  names.reserve(hosts.size());
   for (const std::size_t h : hosts) names.push_back(sample.hosts[h].name);
   Table table;
   table.add_strings("host", names);
   for (std::size_t k = 0; k < hosts.size(); ++k) {
     std::vector<double> column;
+    column.reserve(hosts.size());
     for (const std::size_t h : hosts)
       column.push_back(rounded(covariance(static_cast<Eigen::Index>(h), static_cast<Eigen::Index>(hosts[k])), 9));
     table.add_reals(names[k], std::move(column), "mag2");

@@ -268,6 +268,7 @@ class LadderBlock(unittest.TestCase):
         try:
             output = finished(folder, JOIN, RUN)
             self.assertIn("[blind]", output)
+            self.assertIn("a_B, M_B and H0 carry hidden constants", re.sub(r"\s+", " ", output))
             blind, header = block_of(folder)
             hidden = quantities(folder)
             finished(folder, JOIN)
