@@ -28,6 +28,7 @@ struct StandardisedMagnitude {
   double magnitude = 0.0;
   double fit_variance = 0.0;        ///< a^T C a of the light-curve covariance, a = (1, alpha, -beta) [mag^2].
   double intrinsic_variance = 0.0;  ///< sigma_int^2 + gamma^2 P (1 - P) [mag^2].
+  double selection_bias = 0.0;      ///< Taken off the magnitude (selection.h) [mag].
   /// The same with the true s and c taken at their most probable given the supernova and its population, rather than as
   /// observed: less noise where s and c are poorly measured, at the price of leaning on the population.
   double shrunk_magnitude = 0.0;
@@ -50,9 +51,10 @@ struct StandardisationResult {
   double error(const std::string& name) const;
 };
 
-/// alpha, beta, gamma and sigma_int as plain numbers.
+/// alpha, beta, gamma, sigma_int and the intercept of the relation as plain numbers.
 struct StandardisationCoefficients {
   double alpha = 0.0, beta = 0.0, gamma = 0.0, sigma_int = 0.0;
+  double intercept = 0.0;  ///< Needed for the correction for selection alone.
 };
 StandardisationCoefficients coefficients(const StandardisationResult& result);
 
