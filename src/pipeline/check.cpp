@@ -80,6 +80,8 @@ void add_uncovered(const SpectralTemplate& model, const PassbandCatalogue& catal
   }
 }
 
+}  // namespace
+
 void check_systematics(const RunFile& run, const PassbandCatalogue& catalogue) {
   for (const SystematicInput& one : run.systematics) {
     for (const std::string& id : one.passbands) {
@@ -90,8 +92,6 @@ void check_systematics(const RunFile& run, const PassbandCatalogue& catalogue) {
     if (one.file.given()) require_exists(one.file);
   }
 }
-
-}  // namespace
 
 CheckResult check_run(const RunFile& run) {
   CheckResult result;

@@ -50,8 +50,8 @@ velocity = "column"
 """
 
 
-def make_survey(folder, count=40):
-    """Template, run file and simulated tables in `folder`."""
+def make_survey(folder, count=40, more=""):
+    """Template, run file and simulated tables in `folder`; `more` are keys of the simulated survey."""
     os.makedirs(folder, exist_ok=True)
     template = os.path.join(folder, "template.fits")
     subprocess.run([os.path.join(TOOLS, "make_template"), template], check=True)
@@ -60,7 +60,7 @@ def make_survey(folder, count=40):
         for band in BANDS.items())
     with open(os.path.join(folder, "simulation.toml"), "w", encoding="utf-8") as out:
         out.write(SIMULATION % (passbands, count, ", ".join('"%s"' % band for band in BANDS),
-                                ", ".join("21" for band in BANDS)))
+                                ", ".join("21" for band in BANDS)) + more)
     done = run("simulate", os.path.join(folder, "simulation.toml"), "--template", template, "--to",
                os.path.join(folder, "data"))
     if done.returncode != 0:
