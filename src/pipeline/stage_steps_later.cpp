@@ -118,6 +118,7 @@ StageStep scans_step() {
     std::vector<std::string> files;
     write_result(context, tables.scans, "scans", files);
     if (tables.zrange_grid.rows() > 0) write_result(context, tables.zrange_grid, "zrange-grid", files);
+    if (tables.sky_halves.rows() > 0) write_result(context, tables.sky_halves, "sky-halves", files);
     return files;
   };
   return step;

@@ -198,6 +198,9 @@ def main():
     tables["fields"] = ("ra:f:deg dec:f:deg v_pec:f:'km/s'", [
         (ra, dec, 280 * math.cos(math.radians(ra - 190)) * math.cos(math.radians(dec + 12)) + 60 * math.sin(math.radians(3 * ra)) * math.cos(math.radians(dec)))
         for dec in range(-85, 90, 10) for ra in [360 * (k + 0.5) / max(1, round(36 * math.cos(math.radians(dec)))) for k in range(max(1, round(36 * math.cos(math.radians(dec)))))]])
+    poles = [(math.fmod(k * 137.508, 360), math.degrees(math.asin((k + 0.5) / 96))) for k in range(96)]
+    tables["sky-halves"] = ("ra:f:deg dec:f:deg supernovae:i delta_ab:f delta_ab_error:f caution:t", [
+        (ra, dec, n_used, 0.004 * math.cos(math.radians(ra - 30)) * math.cos(math.radians(dec)), 0.0021, "most extreme of 96" if k == 0 else "") for k, (ra, dec) in enumerate(poles)])
     for name, (columns, rows) in tables.items():
         if name not in without:
             write(folder, name + ".ecsv", spec(columns), rows)
