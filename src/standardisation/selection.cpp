@@ -45,7 +45,7 @@ Chance chance_of(const StandardisationDatum& d, const StandardisationCoefficient
   const Eigen::Vector3d by_s_and_c(0.0, k.alpha, -k.beta);
   Chance out;
   out.limited = true;
-  out.scatter = k.sigma_int * k.sigma_int + k.gamma * k.gamma * p * (1.0 - p) + d.flow_variance;
+  out.scatter = k.sigma_int * k.sigma_int + k.lost_variance + k.gamma * k.gamma * p * (1.0 - p) + d.flow_variance;
   out.blur = limit->width * limit->width + by_s_and_c.dot(d.covariance * by_s_and_c);
   out.margin = limit->m_b - (d.modulus + k.intercept - k.alpha * (d.s - 1.0) + k.beta * d.c - k.gamma * (p - 0.5));
   return out;
@@ -56,6 +56,21 @@ std::vector<StandardisationDatum> corrected(std::span<const StandardisationDatum
   std::vector<StandardisationDatum> out(data.begin(), data.end());
   for (std::size_t i = 0; i < out.size(); ++i) out[i].m_b -= bias[static_cast<Eigen::Index>(i)];
   return out;
+}
+
+/// Mean loss of variance, each supernova with the inverse square of its variance about the relation.
+double mean_loss(std::span<const StandardisationDatum> data, const StandardisationCoefficients& k,
+                 const HostMassOptions& host_mass, const MagnitudeLimits& limits) {
+  const Eigen::Vector3d a(1.0, k.alpha, -k.beta);
+  double sum = 0.0, weights = 0.0;
+  for (const StandardisationDatum& d : data) {
+    const Chance chance = chance_of(d, k, host_mass, limits);
+    const double variance = a.dot(d.covariance * a) + k.sigma_int * k.sigma_int + d.flow_variance;
+    const double weight = 1.0 / (variance * variance);
+    weights += weight;
+    if (chance.limited) sum += weight * selection_variance_loss(chance.scatter, chance.blur, chance.margin);
+  }
+  return sum / weights;
 }
 
 /// Supernovae that their survey can hardly have found.
@@ -76,6 +91,12 @@ double selection_bias(double scatter, double blur, double margin) {
   if (scatter <= 0.0) return 0.0;
   const double whole = std::sqrt(scatter + blur);
   return -scatter / whole * normal_hazard(margin / whole);
+}
+
+double selection_variance_loss(double scatter, double blur, double margin) {
+  if (scatter <= 0.0) return 0.0;
+  const double whole = scatter + blur, t = margin / std::sqrt(whole), h = normal_hazard(t);
+  return scatter * scatter / whole * h * (h + t);
 }
 
 Eigen::VectorXd selection_biases(std::span<const StandardisationDatum> data, const StandardisationCoefficients& k,
@@ -106,7 +127,11 @@ StandardisationResult fit_selected(std::span<const StandardisationDatum> data, c
   constexpr double settled = 1e-7;
   StandardisationResult result = fit(data);
   Eigen::VectorXd bias = Eigen::VectorXd::Zero(static_cast<Eigen::Index>(data.size()));
+  double lost = 0.0;
   for (int round = 0; round < most_rounds; ++round) {
+    result.lost_variance = lost;
+    lost = mean_loss(data, coefficients(result), host_mass, limits);
+    result.lost_variance = lost;
     const Eigen::VectorXd anew = selection_biases(data, coefficients(result), host_mass, limits);
     const double moved = (anew - bias).cwiseAbs().maxCoeff();
     if (moved < settled) {

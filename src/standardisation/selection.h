@@ -30,13 +30,18 @@ using MagnitudeLimits = std::map<std::string, MagnitudeLimit>;
 /// @param margin magnitude of the limit minus that expected.
 double selection_bias(double scatter, double blur, double margin);
 
+/// How much smaller the variance of the found ones is than `scatter`: scatter^2 / (scatter + blur) h (h + t), h =
+/// phi(t) / Phi(t), the rest as above [mag^2].
+double selection_variance_loss(double scatter, double blur, double margin);
+
 /// The bias of each supernova [mag]; 0 where no limit holds.
 ///
-/// Departures are the intrinsic scatter and the scatter of the modulus (sigma_int^2 + gamma^2 P (1 - P) +
-/// flow_variance). The magnitude expected is that of the relation for the observed s, c, host and redshift; the blur,
-/// the limit's width and the errors of s and c. Given its s and c, a supernova's chance depends on nothing else, so
-/// what the population looks like, or how selection bends it, does not enter. The errors of the light-curve fit are
-/// taken not to be known to the search. Of several surveys the faintest limit holds; none, if one has none.
+/// Departures are the intrinsic scatter and the scatter of the modulus (sigma_int^2 + lost_variance +
+/// gamma^2 P (1 - P) + flow_variance). The magnitude expected is that of the relation for the observed s, c, host and
+/// redshift; the blur, the limit's width and the errors of s and c. Given its s and c, a supernova's chance depends on
+/// nothing else, so what the population looks like, or how selection bends it, does not enter. The errors of the
+/// light-curve fit are taken not to be known to the search. Of several surveys the faintest limit holds; none, if one
+/// has none.
 Eigen::VectorXd selection_biases(std::span<const StandardisationDatum> data,
                                  const StandardisationCoefficients& coefficients, const HostMassOptions& host_mass,
                                  const MagnitudeLimits& limits);
@@ -50,8 +55,9 @@ std::vector<StandardisedMagnitude> standardise_selected(std::span<const Standard
 using StandardisationFit = std::function<StandardisationResult(std::span<const StandardisationDatum>)>;
 
 /// A fit to data with the bias taken off: the coefficients give the bias, and the bias the coefficients, until no
-/// magnitude moves by more than 1e-7. A remark says if supernovae are fainter than the limits allow. Throws
-/// NoResultError if that does not settle.
+/// magnitude moves by more than 1e-7. sigma_int is that of the supernovae found; what they lack on average of the
+/// variance before selection, weighted as they weigh in sigma_int, goes into lost_variance. A remark says if supernovae
+/// are fainter than the limits allow. Throws NoResultError if that does not settle.
 StandardisationResult fit_selected(std::span<const StandardisationDatum> data, const HostMassOptions& host_mass,
                                    const MagnitudeLimits& limits, const StandardisationFit& fit);
 

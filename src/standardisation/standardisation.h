@@ -44,7 +44,8 @@ struct StandardisationResult {
   double chi2 = 0.0;  ///< At the maximum; three numbers a supernova for the hierarchical fit, one for the ordinary.
   std::size_t supernovae = 0;
   std::vector<StandardisedMagnitude> magnitudes;  ///< In the order of the data.
-  std::vector<std::string> remarks;               ///< Each a sentence for the user.
+  double lost_variance = 0.0;        ///< Intrinsic variance that a magnitude limit hides from the sample [mag^2].
+  std::vector<std::string> remarks;  ///< Each a sentence for the user.
 
   /// Value of a parameter; throws std::logic_error if there is none of that name.
   double value(const std::string& name) const;
@@ -54,7 +55,9 @@ struct StandardisationResult {
 /// alpha, beta, gamma, sigma_int and the intercept of the relation as plain numbers.
 struct StandardisationCoefficients {
   double alpha = 0.0, beta = 0.0, gamma = 0.0, sigma_int = 0.0;
-  double intercept = 0.0;  ///< Needed for the correction for selection alone.
+  // For the correction for selection alone:
+  double intercept = 0.0;
+  double lost_variance = 0.0;  ///< As in StandardisationResult.
 };
 StandardisationCoefficients coefficients(const StandardisationResult& result);
 

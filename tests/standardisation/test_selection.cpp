@@ -40,6 +40,9 @@ TEST_CASE("the bias of selection is the mean of those that were found") {
     const double mean = sum / found, error = std::sqrt((squares / found - mean * mean) / found);
     INFO("margin " << margin);
     CHECK(selection_bias(scatter, blur, margin) == Approx(mean).margin(4 * error));
+    const double variance = squares / found - mean * mean;
+    CHECK(scatter - selection_variance_loss(scatter, blur, margin) ==
+          Approx(variance).margin(4 * variance * std::sqrt(2.0 / found)));
   }
 }
 
