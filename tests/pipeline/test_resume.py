@@ -77,6 +77,18 @@ class Resume(unittest.TestCase):
             going.communicate()
         self.finish()
 
+    def test_half_written_files_are_removed(self):
+        os.makedirs(path(self.folder, "results", "resume"))
+        gone = subprocess.Popen(["true"])
+        gone.wait()
+        left = [path(self.folder, "results", *where, ".unfinished-%d-table.ecsv" % gone.pid)
+                for where in ((), ("resume",))]
+        for file in left:
+            with open(file, "w", encoding="utf-8") as out:
+                out.write("half")
+        self.finish()
+        self.assertFalse([file for file in left if os.path.exists(file)])
+
     def test_asked_to_stop(self):
         code, errors = self.stop_with(signal.SIGINT)
         self.assertEqual(code, 130, errors)
