@@ -2,9 +2,11 @@
 
 #include <fcntl.h>
 #include <fmt/format.h>
+#include <signal.h>
 #include <unistd.h>
 
 #include <cerrno>
+#include <cstdlib>
 #include <cstring>
 #include <string>
 
@@ -15,6 +17,8 @@ namespace thirdrung {
 namespace fs = std::filesystem;
 
 namespace {
+
+constexpr std::string_view unfinished = ".unfinished-";
 
 [[noreturn]] void fail(const fs::path& path, const char* reason) {
   throw OutputError(fmt::format("{}: cannot be written: {}.", path.string(), reason));
@@ -49,7 +53,7 @@ void write_all(const fs::path& path, const fs::path& target, std::string_view co
 
 void write_atomically(const fs::path& path, const std::function<void(const fs::path&)>& writer) {
   const fs::path temporary =
-      path.parent_path() / fmt::format(".unfinished-{}-{}", ::getpid(), path.filename().string());
+      path.parent_path() / fmt::format("{}{}-{}", unfinished, ::getpid(), path.filename().string());
   std::error_code ignored;
   try {
     writer(temporary);
@@ -60,6 +64,16 @@ void write_atomically(const fs::path& path, const std::function<void(const fs::p
   } catch (...) {
     fs::remove(temporary, ignored);
     throw;
+  }
+}
+
+void remove_unfinished(const fs::path& folder) {
+  std::error_code ignored;
+  for (const auto& entry : fs::directory_iterator(folder, ignored)) {
+    const std::string name = entry.path().filename().string();
+    if (!name.starts_with(unfinished)) continue;
+    const long writer = std::strtol(name.c_str() + unfinished.size(), nullptr, 10);
+    if (writer > 0 && ::kill(static_cast<pid_t>(writer), 0) != 0 && errno == ESRCH) fs::remove(entry.path(), ignored);
   }
 }
 

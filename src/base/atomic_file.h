@@ -17,4 +17,7 @@ void write_file_atomically(const std::filesystem::path& path, std::string_view c
 void write_atomically(const std::filesystem::path& path,
                       const std::function<void(const std::filesystem::path&)>& writer);
 
+/// Removes from a folder the unfinished files of programs that were killed while writing; those of running ones stay.
+void remove_unfinished(const std::filesystem::path& folder);
+
 }  // namespace thirdrung

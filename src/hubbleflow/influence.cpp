@@ -1,6 +1,7 @@
 #include "hubbleflow/influence.h"
 
 #include <cmath>
+#include <numbers>
 
 #include "hubbleflow/least_squares.h"
 
@@ -29,6 +30,11 @@ std::vector<InfluenceRow> influence(const ScanFrame& frame) {
     rows.push_back(row);
   }
   return rows;
+}
+
+double chance_of_largest_pull(double pull, std::size_t count) {
+  const double alone = std::erfc(std::abs(pull) / std::numbers::sqrt2);
+  return -std::expm1(static_cast<double>(count) * std::log1p(-alone));
 }
 
 }  // namespace thirdrung

@@ -1,5 +1,6 @@
 #pragma once
 
+#include <cstddef>
 #include <string>
 #include <vector>
 
@@ -25,5 +26,8 @@ struct InfluenceRow {
 /// [(A^T P A)^-1 A^T P e_i]^2 / Q_ii (Cook & Weisberg 1982, Residuals and Influence in Regression, here for correlated
 /// noise).
 std::vector<InfluenceRow> influence(const ScanFrame& frame);
+
+/// How often the largest of `count` independent normal pulls is at least this by chance: 1 - erf(pull / sqrt 2)^count.
+double chance_of_largest_pull(double pull, std::size_t count);
 
 }  // namespace thirdrung

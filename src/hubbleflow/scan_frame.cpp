@@ -85,8 +85,10 @@ double ScanFrame::error_of(const Eigen::VectorXd& combination) const {
   return std::sqrt(std::max(0.0, combination.dot(covariance_ * combination)));
 }
 
-std::vector<ScanRow> scan_subsets(const ScanFrame& frame, const std::string& scan,
-                                  const std::vector<NamedSubset>& subsets, int threads) {
+namespace {
+
+std::vector<ScanRow> compared(const ScanFrame& frame, const std::string& scan, const std::vector<NamedSubset>& subsets,
+                              const std::vector<bool>& baseline, const Eigen::VectorXd& baseline_weights, int threads) {
   std::vector<ScanRow> rows(subsets.size());
   Eigen::MatrixXd differences = Eigen::MatrixXd::Zero(frame.size(), static_cast<Eigen::Index>(subsets.size()));
   parallel_for(subsets.size(), threads, [&](std::size_t k) {
@@ -96,9 +98,9 @@ std::vector<ScanRow> scan_subsets(const ScanFrame& frame, const std::string& sca
       rows[k] = row_without_result(frame, scan, subset);
       return;
     }
-    const bool same = subset.members == frame.baseline();
-    const Eigen::VectorXd w = same ? frame.baseline_weights() : frame.weights(subset.members);
-    const Eigen::VectorXd difference = w - frame.baseline_weights();
+    const bool same = subset.members == baseline;
+    const Eigen::VectorXd w = same ? baseline_weights : frame.weights(subset.members);
+    const Eigen::VectorXd difference = w - baseline_weights;
     differences.col(static_cast<Eigen::Index>(k)) = difference;
     rows[k] = {scan,
                subset.setting,
@@ -112,6 +114,19 @@ std::vector<ScanRow> scan_subsets(const ScanFrame& frame, const std::string& sca
   });
   add_look_elsewhere_caution(rows, differences.transpose() * frame.covariance() * differences);
   return rows;
+}
+
+}  // namespace
+
+std::vector<ScanRow> scan_subsets(const ScanFrame& frame, const std::string& scan,
+                                  const std::vector<NamedSubset>& subsets, int threads) {
+  return compared(frame, scan, subsets, frame.baseline(), frame.baseline_weights(), threads);
+}
+
+std::vector<ScanRow> scan_subsets_against(const ScanFrame& frame, const std::vector<bool>& baseline,
+                                          const std::string& scan, const std::vector<NamedSubset>& subsets,
+                                          int threads) {
+  return compared(frame, scan, subsets, baseline, frame.weights(baseline), threads);
 }
 
 ScanRow difference_of(const ScanFrame& frame, const std::string& scan, const std::string& setting,

@@ -74,6 +74,11 @@ struct NamedSubset {
 std::vector<ScanRow> scan_subsets(const ScanFrame& frame, const std::string& scan,
                                   const std::vector<NamedSubset>& subsets, int threads = 0);
 
+/// The same against other members than the frame's own baseline, of which there must be enough.
+std::vector<ScanRow> scan_subsets_against(const ScanFrame& frame, const std::vector<bool>& baseline,
+                                          const std::string& scan, const std::vector<NamedSubset>& subsets,
+                                          int threads = 0);
+
 /// The difference of two subsets' intercepts as one row: delta_ab = first - second; a_b is left NaN.
 ScanRow difference_of(const ScanFrame& frame, const std::string& scan, const std::string& setting,
                       const std::vector<bool>& first, const std::vector<bool>& second);

@@ -37,6 +37,13 @@ ScanRow scan_variation(const ScanFrame& frame, const Variation& v) {
   return row;
 }
 
+void estimate_change_variance(const ScanFrame& frame, Variation& v) {
+  const auto in = places_of(frame.baseline());
+  const Eigen::VectorXd change = -5.0 * (single_intercepts(v.supernovae, v.flow) - frame.single_intercepts());
+  v.change_variance = (change.array() - change(in).mean()).square();
+  v.change_covariance = Eigen::VectorXd::Zero(frame.size());
+}
+
 Variation without_correction(const ScanFrame& frame, std::span<const StandardisationDatum> data,
                              const StandardisationCoefficients& k, const HostMassOptions& host_mass, Correction which) {
   const auto n = frame.size();

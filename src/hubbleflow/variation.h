@@ -29,6 +29,11 @@ struct Variation {
 /// (w'_i - w_i) w'_i cov(change_i, y_i).
 ScanRow scan_variation(const ScanFrame& frame, const Variation& variation);
 
+/// Takes the squared departure of each change from their mean over the baseline for its variance, as where a correction
+/// differs from one supernova to the next in a way that no model gives (White 1980, Econometrica 48, 817). The change
+/// is that of the variation's magnitudes and redshifts against the frame's.
+void estimate_change_variance(const ScanFrame& frame, Variation& variation);
+
 /// A correction of the standardisation.
 enum class Correction { stretch, colour, host_mass };
 

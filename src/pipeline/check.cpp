@@ -81,17 +81,6 @@ void add_uncovered(const SpectralTemplate& model, const PassbandCatalogue& catal
   }
 }
 
-void check_systematics(const RunFile& run, const PassbandCatalogue& catalogue) {
-  for (const SystematicInput& one : run.systematics) {
-    for (const std::string& id : one.passbands) {
-      Place place = one.place;
-      place.column = "passbands";
-      catalogue.at(id, place);
-    }
-    if (one.file.given()) require_exists(one.file);
-  }
-}
-
 /// Calibrators and their distances, and what their light curves are.
 void check_join(const RunFile& run, const SurveySupernovae& supernovae, const Photometry& photometry,
                 CheckResult& result) {
@@ -113,6 +102,17 @@ void check_join(const RunFile& run, const SurveySupernovae& supernovae, const Ph
 }
 
 }  // namespace
+
+void check_systematics(const RunFile& run, const PassbandCatalogue& catalogue) {
+  for (const SystematicInput& one : run.systematics) {
+    for (const std::string& id : one.passbands) {
+      Place place = one.place;
+      place.column = "passbands";
+      catalogue.at(id, place);
+    }
+    if (one.file.given()) require_exists(one.file);
+  }
+}
 
 CheckResult check_run(const RunFile& run) {
   CheckResult result;

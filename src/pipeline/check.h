@@ -3,6 +3,7 @@
 #include <string>
 #include <vector>
 
+#include "light/passband_catalogue.h"
 #include "pipeline/run_file.h"
 
 namespace thirdrung {
@@ -15,5 +16,8 @@ struct CheckResult {
 
 /// Reads everything that a run reads and starts nothing. Throws InputError or OutputError for what would stop the run.
 CheckResult check_run(const RunFile& run);
+
+/// Throws InputError if a [[systematic]] names a passband that the catalogue lacks, or a file that is not there.
+void check_systematics(const RunFile& run, const PassbandCatalogue& catalogue);
 
 }  // namespace thirdrung

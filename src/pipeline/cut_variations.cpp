@@ -16,7 +16,7 @@ struct Step {
   double factor;     ///< Multiplied to tighten, divided by to loosen.
 };
 
-constexpr std::array<Step, 11> steps = {{{&CutLimits::c_max, "c_max", -0.1, 1},
+constexpr std::array<Step, 15> steps = {{{&CutLimits::c_max, "c_max", -0.1, 1},
                                          {&CutLimits::s_min, "s_min", 0.05, 1},
                                          {&CutLimits::s_max, "s_max", -0.1, 1},
                                          {&CutLimits::s_error_max, "s_error_max", 0, 1 / 1.5},
@@ -26,7 +26,11 @@ constexpr std::array<Step, 11> steps = {{{&CutLimits::c_max, "c_max", -0.1, 1},
                                          {&CutLimits::first_phase_max, "first_phase_max", -5, 1},
                                          {&CutLimits::last_phase_min, "last_phase_min", 5, 1},
                                          {&CutLimits::mw_ebv_max, "mw_ebv_max", 0, 1 / 1.5},
-                                         {&CutLimits::fit_probability_min, "fit_probability_min", 0, 10}}};
+                                         {&CutLimits::fit_probability_min, "fit_probability_min", 0, 10},
+                                         {&CutLimits::bands_min, "bands_min", 1, 1},
+                                         {&CutLimits::epochs_min, "epochs_min", 2, 1},
+                                         {&CutLimits::host_log_mass_min, "host_log_mass_min", 0.5, 1},
+                                         {&CutLimits::host_log_mass_max, "host_log_mass_max", -0.5, 1}}};
 
 std::string text_of_rule(const CutLimits& limits, const std::string& name) {
   for (const CutRule& rule : cut_rules(limits)) {
@@ -50,6 +54,10 @@ std::vector<CutVariation> cut_variations(const CutLimits& limits) {
       out.push_back(std::move(one));
     }
   }
+  CutVariation hosts{"", limits};
+  hosts.limits.host_mass = !limits.host_mass;
+  hosts.setting = limits.host_mass ? "hosts without a mass too (looser)" : "hosts with a mass alone (tighter)";
+  out.push_back(std::move(hosts));
   return out;
 }
 

@@ -13,8 +13,8 @@ struct CutVariation {
   CutLimits limits;
 };
 
-/// Every numeric rule in force, once tighter and once looser, the others as they are. Redshift limits have scans of
-/// their own, and host-mass limits are choices of a sample; both are left out.
+/// Every numeric rule in force, once tighter and once looser, the others as they are; and that on known host masses
+/// turned round. Redshift limits have scans of their own.
 std::vector<CutVariation> cut_variations(const CutLimits& limits);
 
 }  // namespace thirdrung

@@ -2,6 +2,7 @@
 
 #include <fmt/format.h>
 
+#include <algorithm>
 #include <cmath>
 #include <set>
 
@@ -81,11 +82,22 @@ Table standardised_table(const Magnitudes& sample, const Eigen::MatrixXd& covari
   return out;
 }
 
+/// A word beside the supernova that lies farthest from what all others predict for it.
+std::string caution_of(const InfluenceRow& row, std::size_t count) {
+  const double chance = chance_of_largest_pull(row.predicted_pull, count);
+  return fmt::format("most extreme of {}: chance alone reaches a pull of {:.1f} somewhere in {:.2g}% of such samples",
+                     count, std::abs(row.predicted_pull), 100.0 * chance);
+}
+
 Table influence_table(const std::vector<InfluenceRow>& rows) {
-  std::vector<std::string> name;
+  const auto extreme = std::max_element(rows.begin(), rows.end(), [](const InfluenceRow& a, const InfluenceRow& b) {
+    return std::abs(a.predicted_pull) < std::abs(b.predicted_pull);
+  });
+  std::vector<std::string> name, caution;
   std::vector<double> delta, error, weight, pull;
   for (const InfluenceRow& row : rows) {
     name.push_back(row.supernova);
+    caution.push_back(&row == &*extreme ? caution_of(row, rows.size()) : "");
     delta.push_back(row.delta_ab);
     error.push_back(row.delta_ab_error);
     weight.push_back(row.weight);
@@ -97,6 +109,7 @@ Table influence_table(const std::vector<InfluenceRow>& rows) {
   out.add_reals("delta_ab_error", std::move(error), "", "expected size of that");
   out.add_reals("weight", std::move(weight), "", "in a_b");
   out.add_reals("predicted_pull", std::move(pull), "", "residual from what all others predict, over its error");
+  out.add_strings("caution", std::move(caution));
   return out;
 }
 

@@ -49,6 +49,8 @@ Magnitudes read_magnitudes(const Table& table) {
   const auto mass = optional_reals(table, "host_log_mass", "dex"), t_0 = optional_reals(table, "t_0", "d");
   all.z_helio_error = optional_reals(table, "z_helio_error", "");
   all.mass_probability = optional_reals(table, "host_mass_probability", "");
+  all.selection_bias = optional_reals(table, "selection_bias", "mag");
+  for (double& bias : all.selection_bias) bias = std::isfinite(bias) ? bias : 0.0;
   all.in_sample = table.has("in_sample") ? table.flags("in_sample") : std::vector<bool>(table.rows(), true);
   all.fit_variance.resize(static_cast<Eigen::Index>(table.rows()));
   all.intrinsic_variance.resize(static_cast<Eigen::Index>(table.rows()));
@@ -73,6 +75,7 @@ Magnitudes some_of(const Magnitudes& all, const std::vector<bool>& keep) {
     some.supernovae.push_back(all.supernovae[i]);
     some.z_helio_error.push_back(all.z_helio_error[i]);
     some.mass_probability.push_back(all.mass_probability[i]);
+    some.selection_bias.push_back(all.selection_bias[i]);
     some.in_sample.push_back(all.in_sample[i]);
   }
   return some;

@@ -35,6 +35,8 @@ OutputFolder::OutputFolder(fs::path path) : path_(std::move(path)) {
         fmt::format("{}: another run is at work in this folder; wait for it, or give another output in the run file.",
                     path_.string()));
   }
+  remove_unfinished(path_);
+  remove_unfinished(resume_folder());
   load();
 }
 

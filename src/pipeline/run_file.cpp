@@ -21,7 +21,7 @@ struct KnownSection {
   bool list;  ///< Written [[name]], any number of them.
 };
 
-constexpr std::array<KnownSection, 14> known_sections = {{{"run", read_run_section, false},
+constexpr std::array<KnownSection, 15> known_sections = {{{"run", read_run_section, false},
                                                           {"template", read_template_section, false},
                                                           {"passbands", read_passbands_section, false},
                                                           {"survey", read_survey_section, true},
@@ -31,6 +31,7 @@ constexpr std::array<KnownSection, 14> known_sections = {{{"run", read_run_secti
                                                           {"intercept", read_intercept_section, false},
                                                           {"cuts", read_cuts_section, false},
                                                           {"standardisation", read_standardisation_section, false},
+                                                          {"selection", read_selection_section, true},
                                                           {"systematic", read_systematic_section, true},
                                                           {"scans", read_scans_section, false},
                                                           {"join", read_join_section, false},

@@ -17,6 +17,7 @@
 #include "sample/sky_reddening.h"
 #include "sky/dust_map.h"
 #include "standardisation/hierarchical.h"
+#include "standardisation/selection.h"
 
 namespace thirdrung {
 
@@ -73,10 +74,12 @@ enum class SystematicKind {
   redshift,
   velocity_strength,
   velocity_source,
+  velocity_scatter,
   sun_motion,
   mass_step,
   mass_offset,
   population,
+  selection_limit,
   q0,
   j0
 };
@@ -142,6 +145,7 @@ struct RunFile {
   RedshiftInput redshift;
   CutLimits cuts;  ///< Its redshift range is that of [intercept].
   StandardisationInput standardisation;
+  MagnitudeLimits magnitude_limits;  ///< [[selection]], by survey.
   InterceptInput intercept;
   std::vector<SystematicInput> systematics;
   bool refit_with_systematics = true;  ///< Coefficients refitted with every shifted input; else held.

@@ -10,7 +10,7 @@ namespace thirdrung {
 
 namespace {
 
-constexpr std::array<std::pair<SystematicKind, const char*>, 16> kind_names = {
+constexpr std::array<std::pair<SystematicKind, const char*>, 18> kind_names = {
     {{SystematicKind::zero_point, "zero_point"},
      {SystematicKind::wavelength, "wavelength"},
      {SystematicKind::milky_way_scale, "milky_way_scale"},
@@ -21,10 +21,12 @@ constexpr std::array<std::pair<SystematicKind, const char*>, 16> kind_names = {
      {SystematicKind::redshift, "redshift"},
      {SystematicKind::velocity_strength, "velocity_strength"},
      {SystematicKind::velocity_source, "velocity_source"},
+     {SystematicKind::velocity_scatter, "velocity_scatter"},
      {SystematicKind::sun_motion, "sun_motion"},
      {SystematicKind::mass_step, "mass_step"},
      {SystematicKind::mass_offset, "mass_offset"},
      {SystematicKind::population, "population"},
+     {SystematicKind::selection_limit, "selection_limit"},
      {SystematicKind::q0, "q0"},
      {SystematicKind::j0, "j0"}}};
 
@@ -41,6 +43,7 @@ bool has_surveys(SystematicKind kind) {
     case SystematicKind::dust_law:
     case SystematicKind::template_file:
     case SystematicKind::redshift:
+    case SystematicKind::selection_limit:
       return true;
     default:
       return false;
@@ -58,10 +61,13 @@ std::optional<double> usual_size(SystematicKind kind) {
       return 4e-5;  // Carr et al. 2022, PASA 39, e046.
     case SystematicKind::velocity_strength:
       return 0.1;
+    case SystematicKind::velocity_scatter:
+      return 50;  // km/s: published analyses use 150 to 300; were all as likely, their deviation would be 43.
     case SystematicKind::sun_motion:
       return 0.11;  // km/s, Planck Collaboration I 2020.
     case SystematicKind::mass_step:
     case SystematicKind::mass_offset:
+    case SystematicKind::selection_limit:
       return 0.2;
     case SystematicKind::q0:
       return 0.02;
@@ -138,13 +144,13 @@ void read_systematic_section(RunSection section, RunFile& run) {
   if (input.velocity == VelocitySource::grid && !input.file.given()) {
     throw InputError(section.place("velocity"), "velocity = \"grid\" needs a velocity field", "give file");
   }
-  for (const std::string& survey : input.surveys) {
-    std::vector<std::string> names;
-    for (const SurveyInput& known : run.surveys) names.push_back(known.name);
-    if (std::find(names.begin(), names.end(), survey) != names.end()) continue;
-    const std::string near = nearest_word(survey, names);
-    throw InputError(section.place("surveys"), fmt::format("there is no survey {}", survey),
-                     near.empty() ? "name one of the run" : fmt::format("did you mean {}?", near));
+  refuse_unknown_surveys(input.surveys, section, run);
+  if (input.kind == SystematicKind::selection_limit) {
+    const auto limited = [&](const std::string& survey) { return run.magnitude_limits.contains(survey); };
+    const bool any = input.surveys.empty() ? !run.magnitude_limits.empty()
+                                           : std::any_of(input.surveys.begin(), input.surveys.end(), limited);
+    if (!any)
+      throw InputError(section.place("kind"), "no survey in scope has a magnitude limit", "state it in [[selection]]");
   }
   run.systematics.push_back(std::move(input));
 }

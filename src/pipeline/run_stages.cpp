@@ -9,6 +9,7 @@
 #include "base/text.h"
 #include "pipeline/blinding.h"
 #include "pipeline/calibrators.h"
+#include "pipeline/check.h"
 #include "pipeline/inputs.h"
 #include "pipeline/output_folder.h"
 #include "pipeline/stage_steps.h"
@@ -83,6 +84,8 @@ std::string name_of(Stage stage) {
 
 void run_stages(const RunFile& run, const RunOptions& options) {
   const auto inputs_of_fits = checksums_of_lightcurve_inputs(run);
+  // Said now rather than after the light curves.
+  if (!run.systematics.empty()) check_systematics(run, read_catalogue(run));
   auto inputs = inputs_of_fits;
   for (const InputChecksum& one : checksums_of_later_inputs(run)) inputs.push_back(one);
   check_calibrators(run);

@@ -11,6 +11,7 @@ namespace thirdrung {
 struct ScanTables {
   Table scans;        ///< One row a setting.
   Table zrange_grid;  ///< Lower and upper redshift limits together; no rows unless scanned.
+  Table sky_halves;   ///< The map of the difference over directions of the pole; no rows unless scanned.
 };
 
 /// How a_b moves with every choice that the run file lists, each against the baseline in the joint covariance.

@@ -123,7 +123,7 @@ StageStep standardisation_step() {
   StageStep step;
   step.wanted = always;
   step.depends_on = [](const StageContext& context) {
-    return settings_of(context.run, {"standardisation", "intercept", "cuts", "scans"}) +
+    return settings_of(context.run, {"standardisation", "selection", "intercept", "cuts", "scans"}) +
            content_of(context, "sample.ecsv") + fmt::format("\n{}", context.hidden_offset);
   };
   step.make = [](const StageContext& context, const std::string&) {

@@ -9,6 +9,7 @@
 #include "pipeline/stage_steps.h"
 #include "pipeline/standardisation_stage.h"
 #include "pipeline/systematics_stage.h"
+#include "pipeline/version.h"
 
 namespace thirdrung {
 
@@ -69,24 +70,32 @@ std::string covariance_depends_on(const StageContext& context) {
          content_of(context, coefficients_file) + content_of(context, shifts_file);
 }
 
+/// What the shift of every moved input depends on, whatever the others are.
+std::string every_shift_depends_on(const StageContext& context) {
+  return settings_of(context.run, {"survey", "milky_way", "lightcurve", "redshift", "cuts", "intercept",
+                                   "standardisation", "selection"}) +
+         context.all_inputs + content_of(context, "lightcurve-fits.ecsv") + content_of(context, "sample.ecsv") +
+         content_of(context, "magnitudes.ecsv");
+}
+
 }  // namespace
 
 StageStep systematics_step() {
   StageStep step;
   step.wanted = [](const RunFile& run) { return !run.systematics.empty(); };
   step.depends_on = [](const StageContext& context) {
-    return settings_of(context.run, {"survey", "milky_way", "lightcurve", "redshift", "cuts", "intercept",
-                                     "standardisation", "systematic"}) +
-           context.all_inputs + content_of(context, "lightcurve-fits.ecsv") + content_of(context, "sample.ecsv") +
-           content_of(context, "magnitudes.ecsv");
+    return settings_of(context.run, {"systematic"}) + every_shift_depends_on(context);
   };
   step.make = [](const StageContext& context, const std::string&) {
+    // Not on the list of systematics: what one of them has shifted stays when another is added.
+    const SavedShifts saved(context.folder.resume_folder(), program_version() + "\n" + every_shift_depends_on(context));
     const SystematicShifts shifts = find_systematic_shifts(
         context.run, stage_table(context, "lightcurve-fits.ecsv", "fit"), stage_table(context, "sample.ecsv", "select"),
-        stage_table(context, "magnitudes.ecsv", "standardise"));
+        stage_table(context, "magnitudes.ecsv", "standardise"), saved);
     write_shifts(shifts, context.folder.path() / shifts_file);
     return std::vector<std::string>{shifts_file};
   };
+  step.clean_up = [](const StageContext& context) { SavedShifts::remove_all(context.folder.resume_folder()); };
   return step;
 }
 
@@ -127,6 +136,7 @@ StageStep scans_step() {
     std::vector<std::string> files;
     write_result(context, tables.scans, "scans", files);
     if (tables.zrange_grid.rows() > 0) write_result(context, tables.zrange_grid, "zrange-grid", files);
+    if (tables.sky_halves.rows() > 0) write_result(context, tables.sky_halves, "sky-halves", files);
     return files;
   };
   return step;

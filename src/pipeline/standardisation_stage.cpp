@@ -100,6 +100,12 @@ Table magnitudes_table(const Table& chosen, const std::vector<StandardisedMagnit
   return table;
 }
 
+void add_selection_bias(Table& table, const std::vector<StandardisedMagnitude>& magnitudes) {
+  std::vector<double> bias;
+  for (const StandardisedMagnitude& one : magnitudes) bias.push_back(one.selection_bias);
+  table.add_reals("selection_bias", std::move(bias), "mag", "by the magnitude limit, taken off m_b_standardised");
+}
+
 }  // namespace
 
 std::vector<StandardisationDatum> standardisation_data(const RunFile& run, const Table& sample,
@@ -135,8 +141,12 @@ std::vector<StandardisationDatum> standardisation_data(const RunFile& run, const
 }
 
 StandardisationResult fit_standardisation(const RunFile& run, const std::vector<StandardisationDatum>& data) {
-  if (run.standardisation.ordinary) return fit_ordinary(data, {run.standardisation.options.host_mass, 200});
-  return fit_hierarchical(data, run.standardisation.options);
+  const HostMassOptions& mass = run.standardisation.options.host_mass;
+  const StandardisationFit fit = [&](std::span<const StandardisationDatum> some) {
+    if (run.standardisation.ordinary) return fit_ordinary(some, {mass, 200});
+    return fit_hierarchical(some, run.standardisation.options);
+  };
+  return run.magnitude_limits.empty() ? fit(data) : fit_selected(data, mass, run.magnitude_limits, fit);
 }
 
 StandardisationTables standardise_sample(const RunFile& run, const Table& sample, double hidden_offset) {
@@ -163,9 +173,11 @@ StandardisationTables standardise_sample(const RunFile& run, const Table& sample
     if (chosen[i]) in_sample.push_back(good[i]);
   }
   const auto data = standardisation_data(run, sample, chosen);
-  const auto magnitudes = standardise(data, coefficients(result), run.standardisation.options.host_mass);
+  const auto magnitudes =
+      standardise_selected(data, coefficients(result), run.standardisation.options.host_mass, run.magnitude_limits);
   StandardisationTables out;
   out.magnitudes = magnitudes_table(rows_of(sample, chosen), magnitudes, in_sample, hidden_offset);
+  if (!run.magnitude_limits.empty()) add_selection_bias(out.magnitudes, magnitudes);
   out.parameters = parameters_table(result, hidden_offset);
   for (const StandardisationParameter& one : result.parameters) out.names.push_back(one.name);
   out.covariance = result.covariance;

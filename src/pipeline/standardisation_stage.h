@@ -31,7 +31,7 @@ StandardisationTables standardise_sample(const RunFile& run, const Table& sample
 std::vector<StandardisationDatum> standardisation_data(const RunFile& run, const Table& sample,
                                                        const std::vector<bool>& keep);
 
-/// The fit itself, by the method of the run file.
+/// The fit itself, by the method of the run file, corrected for selection where a survey has a magnitude limit.
 StandardisationResult fit_standardisation(const RunFile& run, const std::vector<StandardisationDatum>& data);
 
 /// The magnitudes table read back.
@@ -40,7 +40,8 @@ struct Magnitudes {
   Eigen::VectorXd fit_variance, intrinsic_variance;  ///< [mag^2]
   std::vector<double> z_helio_error;
   std::vector<double> mass_probability;
-  std::vector<bool> in_sample;  ///< Passes every quality rule but perhaps the redshift range.
+  std::vector<double> selection_bias;  ///< Taken off the magnitudes; 0 where the table does not have it [mag].
+  std::vector<bool> in_sample;         ///< Passes every quality rule but perhaps the redshift range.
 };
 /// Throws InputError for missing columns, wrong units, names that occur twice and variances that are not positive.
 Magnitudes read_magnitudes(const Table& table);

@@ -12,16 +12,19 @@ void write_shifts(const SystematicShifts& shifts, const std::filesystem::path& p
   std::vector<double> values;
   std::vector<std::string> names, kinds, units;
   std::vector<double> sizes;
+  std::vector<bool> weighs;
   for (const SystematicShift& one : shifts.shifts) {
     values.insert(values.end(), one.shift.begin(), one.shift.end());
     names.push_back(one.name);
     kinds.push_back(one.kind);
     units.push_back(one.unit);
     sizes.push_back(one.size);
+    weighs.push_back(one.weighs);
   }
   Table systematics;
   systematics.add_strings("name", names).add_strings("kind", kinds).add_reals("size", sizes);
   systematics.add_strings("unit_of_size", units);
+  systematics.add_flags("weighs", weighs, "counts in the weights of a_b, not in its error alone");
   Table supernovae;
   supernovae.add_strings("supernova", shifts.supernovae);
   FitsWriter writer;
@@ -39,6 +42,7 @@ SystematicShifts read_shifts(const std::filesystem::path& path) {
   const Table table = reader.table("systematics");
   const auto names = table.strings("name"), kinds = table.strings("kind"), units = table.strings("unit_of_size");
   const auto sizes = table.reals("size");
+  const auto weighs = table.has("weighs") ? table.flags("weighs") : std::vector<bool>(names.size(), true);
   const FitsImage image = reader.image("shifts");
   const std::size_t n = out.supernovae.size();
   if (image.shape != std::vector<std::size_t>{names.size(), n}) {
@@ -52,6 +56,7 @@ SystematicShifts read_shifts(const std::filesystem::path& path) {
     one.kind = kinds[k];
     one.size = sizes[k];
     one.unit = units[k];
+    one.weighs = weighs[k];
     one.shift = Eigen::Map<const Eigen::VectorXd>(image.values.data() + k * n, static_cast<Eigen::Index>(n));
     out.shifts.push_back(std::move(one));
   }

@@ -2,35 +2,25 @@
 
 #include <fmt/format.h>
 
-#include <Eigen/SVD>
 #include <algorithm>
-#include <array>
-#include <cmath>
 #include <map>
 #include <set>
+#include <span>
 
 #include "base/error.h"
 #include "base/parallel.h"
 #include "base/progress.h"
-#include "lightcurve/results.h"
 #include "pipeline/calibrators.h"
 #include "pipeline/sample_stage.h"
+#include "pipeline/shift_list.h"
 #include "pipeline/standardisation_stage.h"
 #include "pipeline/table_tools.h"
 #include "pipeline/varied_inputs.h"
+#include "pipeline/weight_shift.h"
 
 namespace thirdrung {
 
 namespace {
-
-using Key = std::pair<std::string, std::string>;
-
-std::vector<Key> keys_of(const Table& fits) {
-  const auto survey = fits.strings("survey"), supernova = fits.strings("supernova");
-  std::vector<Key> out;
-  for (std::size_t i = 0; i < survey.size(); ++i) out.emplace_back(survey[i], supernova[i]);
-  return out;
-}
 
 /// What stays while inputs move.
 struct Baseline {
@@ -38,61 +28,13 @@ struct Baseline {
   const RunInputs& inputs;
   Table fits;                      ///< Of the supernovae in `names`.
   std::vector<std::string> names;  ///< In the order of the shifts: the Hubble flow, then calibrators.
-  Eigen::Index in_flow = 0;        ///< So many of them are of the Hubble flow.
   std::vector<bool> used;          ///< One each: in the fit of the coefficients.
   StandardisationCoefficients coefficients;
-  std::vector<FlowSupernova> flow;
+  Magnitudes magnitudes;        ///< Of the Hubble flow, as the fits give them, without a hidden offset.
+  Eigen::VectorXd calibrators;  ///< Magnitudes of the others [mag].
+
+  std::size_t in_flow() const { return magnitudes.supernovae.size(); }
 };
-
-/// Light curves that a moved input touches.
-std::vector<LightCurve> touched(const MovedInput& moved, const std::vector<LightCurve>& all) {
-  std::vector<LightCurve> out;
-  for (const LightCurve& one : all) {
-    const bool survey = moved.surveys.empty() ||
-                        std::find(moved.surveys.begin(), moved.surveys.end(), one.survey) != moved.surveys.end();
-    const bool band = moved.passbands.empty() || std::any_of(one.passbands.begin(), one.passbands.end(), [&](auto& id) {
-                        return std::find(moved.passbands.begin(), moved.passbands.end(), id) != moved.passbands.end();
-                      });
-    if (survey && band) out.push_back(one);
-  }
-  return out;
-}
-
-/// A fit that moves farther than this in t_0 has jumped to another solution, which is not what a small change of an
-/// input does [d].
-constexpr double jump = 1.0;
-
-/// The baseline's fits with those in `anew` in place of the old ones, but for those that jumped.
-Table replaced(const Table& fits, const Table& anew) {
-  std::map<Key, double> old_t_0;
-  const auto old_keys = keys_of(fits), new_keys = keys_of(anew);
-  const auto old_dates = fits.reals("t_0"), new_dates = anew.reals("t_0");
-  for (std::size_t i = 0; i < old_keys.size(); ++i) old_t_0[old_keys[i]] = old_dates[i];
-  std::vector<bool> take, keep;
-  std::set<Key> gone;
-  for (std::size_t i = 0; i < new_keys.size(); ++i) {
-    const auto old = old_t_0.find(new_keys[i]);
-    take.push_back(old != old_t_0.end() && std::abs(new_dates[i] - old->second) < jump);
-    if (take.back()) gone.insert(new_keys[i]);
-  }
-  for (const Key& key : old_keys) keep.push_back(!gone.contains(key));
-  const std::array<Table, 2> both = {rows_of(fits, keep), rows_of(anew, take)};
-  return stacked(both);
-}
-
-Table fits_with(const Baseline& base, const MovedInput& moved, const RunFile& run, const RunInputs& inputs) {
-  if (!moved.refits_light_curves) return base.fits;
-  const auto light_curves = touched(moved, inputs.light_curves);
-  if (light_curves.empty()) return base.fits;
-  Progress silent("", 0);
-  FitOptions options = run.lightcurve;
-  options.curves = false;
-  const LightCurveFits fits =
-      fit_all(light_curves, inputs.supernovae, PreparedTemplate(inputs.trained.model), inputs.catalogue,
-              Extinction(run.milky_way.law, run.milky_way.r_v), options, run.threads, &silent);
-  const Table anew = fits_table(fits.fits);
-  return anew.rows() > 0 ? replaced(base.fits, anew) : base.fits;
-}
 
 /// Rows of the sample in the order of `names`.
 std::vector<StandardisationDatum> data_in_order(const RunFile& run, const Table& sample,
@@ -118,16 +60,32 @@ std::vector<StandardisationDatum> where(const std::vector<StandardisationDatum>&
   return out;
 }
 
-std::vector<FlowSupernova> flow_of(const std::vector<StandardisationDatum>& data,
-                                   const StandardisationCoefficients& coefficients, const HostMassOptions& mass) {
-  const auto magnitudes = standardise(data, coefficients, mass);
-  std::vector<FlowSupernova> out(data.size());
-  for (std::size_t i = 0; i < data.size(); ++i) {
-    out[i].name = data[i].name;
-    out[i].z_helio = data[i].z_helio;
-    out[i].z_flow = data[i].z_flow;
-    out[i].m_b_standardised = magnitudes[i].magnitude;
+/// Magnitudes of the Hubble flow made again, from the first of the data.
+Magnitudes standardised_again(const RunFile& run, Magnitudes all, const std::vector<StandardisationDatum>& data,
+                              const StandardisationCoefficients& coefficients) {
+  const std::vector<StandardisationDatum> flow(data.begin(),
+                                               data.begin() + static_cast<std::ptrdiff_t>(all.supernovae.size()));
+  const auto magnitudes =
+      standardise_selected(flow, coefficients, run.standardisation.options.host_mass, run.magnitude_limits);
+  for (std::size_t i = 0; i < flow.size(); ++i) {
+    const auto k = static_cast<Eigen::Index>(i);
+    all.supernovae[i].z_helio = data[i].z_helio;
+    all.supernovae[i].z_flow = data[i].z_flow;
+    all.supernovae[i].m_b_standardised = magnitudes[i].magnitude;
+    all.fit_variance(k) = magnitudes[i].fit_variance;
+    all.intrinsic_variance(k) = magnitudes[i].intrinsic_variance;
   }
+  return all;
+}
+
+/// Magnitudes of the calibrators, the last of the data.
+Eigen::VectorXd calibrators_again(const RunFile& run, std::size_t in_flow,
+                                  const std::vector<StandardisationDatum>& data,
+                                  const StandardisationCoefficients& coefficients) {
+  const auto magnitudes =
+      standardise(std::span(data).subspan(in_flow), coefficients, run.standardisation.options.host_mass);
+  Eigen::VectorXd out(static_cast<Eigen::Index>(magnitudes.size()));
+  for (Eigen::Index i = 0; i < out.size(); ++i) out(i) = magnitudes[static_cast<std::size_t>(i)].magnitude;
   return out;
 }
 
@@ -137,8 +95,8 @@ StandardisationCoefficients fitted(const RunFile& run, const std::vector<Standar
 }
 
 Baseline make_baseline(const RunFile& run, const RunInputs& inputs, const Table& fits, const Table& sample,
-                       const std::vector<std::string>& names, Eigen::Index in_flow) {
-  Baseline base{run, inputs, {}, names, in_flow, {}, {}, {}};
+                       const Table& magnitudes, const std::vector<std::string>& names) {
+  Baseline base{run, inputs, {}, names, {}, {}, {}, {}};
   const std::set<std::string> wanted(base.names.begin(), base.names.end());
   std::vector<bool> keep;
   for (const std::string& name : fits.strings("supernova")) keep.push_back(wanted.contains(name));
@@ -151,96 +109,82 @@ Baseline make_baseline(const RunFile& run, const RunInputs& inputs, const Table&
   const auto data =
       data_in_order(run, make_sample(run, base.fits, inputs.supernovae, inputs.redshifts).sample, base.names);
   base.coefficients = fitted(run, data, base.used);
-  base.flow = flow_of(data, base.coefficients, run.standardisation.options.host_mass);
+  base.magnitudes = standardised_again(run, read_magnitudes(magnitudes), data, base.coefficients);
+  base.calibrators = calibrators_again(run, base.in_flow(), data, base.coefficients);
   return base;
 }
 
-/// Of the Hubble flow, in which redshift and expansion count; and of calibrators, whose distance has no part in them.
-Eigen::VectorXd magnitude_shift(const Baseline& base, const std::vector<FlowSupernova>& moved,
-                                const FlowOptions& moved_flow) {
-  const auto count = static_cast<std::size_t>(base.in_flow);
-  Eigen::VectorXd out(static_cast<Eigen::Index>(moved.size()));
-  out.head(base.in_flow) = effective_shift(std::span(base.flow).first(count), base.run.intercept.options.flow,
-                                           std::span(moved).first(count), moved_flow);
-  for (Eigen::Index i = base.in_flow; i < out.size(); ++i) {
-    const auto k = static_cast<std::size_t>(i);
-    out[i] = moved[k].m_b_standardised - base.flow[k].m_b_standardised;
-  }
-  return out;
-}
-
-SystematicShift shift_of(const Baseline& base, const MovedInput& moved) {
+/// @param others the other systematics, for a move that changes the weights.
+Eigen::VectorXd shift_of(const Baseline& base, const MovedInput& moved, const std::vector<SystematicShift>& others) {
   RunFile run = base.run;
   RunInputs inputs = base.inputs;
   moved.move(run, inputs);
-  const Table fits = fits_with(base, moved, run, inputs);
+  const Table fits = fits_with(moved, run, inputs, base.fits);
   const auto data = data_in_order(run, make_sample(run, fits, inputs.supernovae, inputs.redshifts).sample, base.names);
   const auto coefficients = base.run.refit_with_systematics ? fitted(run, data, base.used) : base.coefficients;
-  const auto flow = flow_of(data, coefficients, run.standardisation.options.host_mass);
+  const Magnitudes magnitudes = standardised_again(run, base.magnitudes, data, coefficients);
+  // Redshift and expansion count in the Hubble flow; the distance of a calibrator has no part in them.
+  Eigen::VectorXd flow = effective_shift(base.magnitudes.supernovae, base.run.intercept.options.flow,
+                                         magnitudes.supernovae, run.intercept.options.flow);
+  if (moved.moves_weights) {
+    const std::vector<bool> used(base.used.begin(), base.used.begin() + static_cast<std::ptrdiff_t>(base.in_flow()));
+    flow.array() += common_shift_of_weights({base.run, base.magnitudes}, {run, magnitudes}, flow, used, others);
+  }
+  Eigen::VectorXd shift(static_cast<Eigen::Index>(base.names.size()));
+  shift << flow, calibrators_again(run, base.in_flow(), data, coefficients) - base.calibrators;
+  if (moved.scaled_after) shift *= moved.size;
+  return shift;
+}
+
+SystematicShift named_shift(const MovedInput& moved, Eigen::VectorXd shift) {
   SystematicShift out;
   out.name = moved.name;
   out.kind = moved.kind;
   out.size = moved.size;
   out.unit = moved.unit;
-  out.shift = magnitude_shift(base, flow, run.intercept.options.flow);
-  if (moved.scaled_after) out.shift *= moved.size;
+  // Through alpha, beta and gamma alone, whose errors do not weigh either (CovarianceModel::weighting).
+  out.weighs = !moved.moves_weights;
+  out.shift = std::move(shift);
   return out;
 }
 
-/// Shifts named `stem` and a number, of which there may be hundreds, in their principal directions: the sum of their
-/// outer products stays the same but for a part in 1e4 of its trace.
-void condense(std::vector<SystematicShift>& shifts, const std::string& stem) {
-  std::vector<SystematicShift> others, members;
-  for (SystematicShift& one : shifts) (one.name.starts_with(stem) ? members : others).push_back(std::move(one));
-  shifts = std::move(others);
-  if (members.empty()) return;
-  Eigen::MatrixXd matrix(members.front().shift.size(), static_cast<Eigen::Index>(members.size()));
-  for (std::size_t k = 0; k < members.size(); ++k) matrix.col(static_cast<Eigen::Index>(k)) = members[k].shift;
-  const Eigen::BDCSVD<Eigen::MatrixXd> principal(matrix, Eigen::ComputeThinU);
-  const Eigen::VectorXd size = principal.singularValues();
-  double left = size.squaredNorm();
-  const double enough = 1e-4 * left;
-  for (Eigen::Index k = 0; k < size.size() && left > enough; ++k) {
-    SystematicShift one = members.front();
-    one.name = fmt::format("template direction {}", k + 1);
-    one.shift = size(k) * principal.matrixU().col(k);
-    if (one.shift.sum() < 0) one.shift = -one.shift;
-    shifts.push_back(std::move(one));
-    left -= size(k) * size(k);
+/// Every move of the run, those that change the weights last: they need to know the other shifts.
+std::vector<MovedInput> all_moves(const RunFile& run, const RunInputs& inputs) {
+  std::vector<MovedInput> all;
+  for (const SystematicInput& input : run.systematics) {
+    for (MovedInput& one : moved_inputs(input, inputs)) all.push_back(std::move(one));
   }
-}
-
-void make_names_unique(std::vector<SystematicShift>& shifts) {
-  std::set<std::string> names;
-  for (SystematicShift& one : shifts) {
-    const std::string name = one.name;
-    for (int copy = 2; !names.insert(one.name).second; ++copy) one.name = fmt::format("{} ({})", name, copy);
-  }
+  std::stable_partition(all.begin(), all.end(), [](const MovedInput& one) { return !one.moves_weights; });
+  return all;
 }
 
 }  // namespace
 
 SystematicShifts find_systematic_shifts(const RunFile& run, const Table& fits, const Table& sample,
-                                        const Table& magnitudes) {
+                                        const Table& magnitudes, const SavedShifts& saved) {
   std::vector<std::string> names = magnitudes.strings("supernova");
-  const auto in_flow = static_cast<Eigen::Index>(names.size());
   for (std::string& name : good_calibrators(run, sample)) names.push_back(std::move(name));
   const RunInputs inputs = read_run_inputs(run, names);
-  const Baseline base = make_baseline(run, inputs, fits, sample, names, in_flow);
-  std::vector<MovedInput> all;
-  for (const SystematicInput& input : run.systematics) {
-    for (MovedInput& one : moved_inputs(input, inputs)) all.push_back(std::move(one));
-  }
-  SystematicShifts out{base.names, {}};
+  const Baseline base = make_baseline(run, inputs, fits, sample, magnitudes, names);
+  const std::vector<MovedInput> all = all_moves(run, inputs);
+  const auto n = static_cast<Eigen::Index>(base.names.size());
+  std::vector<SystematicShift> shifts, of_weights;
   Progress progress("Systematics", all.size());
   for (const MovedInput& one : all) {
     if (stop_requested()) throw Interrupted("stopped on request");
-    out.shifts.push_back(shift_of(base, one));
+    // What moves the weights depends on the other systematics, and is quickly done.
+    auto shift = one.moves_weights ? std::nullopt : saved.find(one.identity, n);
+    if (!shift) {
+      shift = shift_of(base, one, shifts);
+      if (!one.moves_weights) saved.save(one.identity, *shift);
+    }
+    (one.moves_weights ? of_weights : shifts).push_back(named_shift(one, std::move(*shift)));
     progress.advance();
   }
-  condense(out.shifts, "template mode");
-  make_names_unique(out.shifts);
-  return out;
+  condense(shifts, "template mode");
+  shifts.insert(shifts.end(), std::make_move_iterator(of_weights.begin()), std::make_move_iterator(of_weights.end()));
+  make_names_unique(shifts);
+  return {base.names, std::move(shifts)};
 }
 
 }  // namespace thirdrung

@@ -5,7 +5,7 @@
 #include <cmath>
 #include <set>
 
-#include "report/chart_spec.h"
+#include "report/charts_sky.h"
 #include "report/digits.h"
 #include "report/spec_parts.h"
 
@@ -111,7 +111,8 @@ Chart scan_chart(const ChartInput& input) {
   std::vector<double> shown, errors;
   for (std::size_t i = 0; i < shift.size(); ++i) {
     csv.push_back({axes[i], settings[i], number[i], shift[i], error[i], cautions[i]});
-    if (axes[i] != last || i == 0) {
+    if (axes[i] == "sky_halves" && input.run.sky_halves) continue;  // They have a map of their own.
+    if (axes[i] != last || order.empty()) {
       // A line of its own names the choice; its settings stand below.
       order.push_back(fmt::format("h{}", i));
       labels.push_back(axes[i]);
@@ -237,6 +238,7 @@ ChartSection choices_section(const ChartInput& input) {
       {}};
   if (input.run.scans) section.charts.push_back(scan_chart(input));
   if (input.run.zrange_grid) section.charts.push_back(grid_chart(input));
+  if (input.run.sky_halves) section.charts.push_back(sky_halves_chart(input));
   return section;
 }
 

@@ -93,6 +93,20 @@ json tone_legend(const std::string& title) {
           {"type", "gradient"}, {"gradientLength", 180}, {"gradientThickness", 9}};
 }
 
+/// Discs of the rows of "field" that together cover most of the map: its area is 4π in units of the radius squared.
+json field_discs(std::size_t rows) {
+  const double cell = 4 * 3.14159265 / static_cast<double>(std::max<std::size_t>(1, rows));
+  return {{"type", "symbol"},
+          {"from", {{"data", "field"}}},
+          {"encode",
+           {{"update",
+             {{"x", {{"scale", "x"}, {"field", "x"}}},
+              {"y", {{"scale", "y"}, {"field", "y"}}},
+              {"shape", {{"value", "circle"}}},
+              {"size", {{"signal", fmt::format("{} * radius * radius * 0.6", cell)}}},
+              {"fill", {{"scale", "tone"}, {"field", "v"}}}}}}}};
+}
+
 }  // namespace
 
 Chart residual_sky_chart(const ChartInput& input) {
@@ -121,6 +135,46 @@ Chart residual_sky_chart(const ChartInput& input) {
           ""};
 }
 
+Chart sky_halves_chart(const ChartInput& input) {
+  const Table& table = *input.run.sky_halves;
+  const auto ra = table.reals("ra"), dec = table.reals("dec"), delta = table.reals("delta_ab"),
+             error = table.reals("delta_ab_error");
+  const auto caution = strings_or_empty(table, "caution");
+  json rows = json::array(), csv = json::array();
+  double largest = 1e-6;
+  for (std::size_t i = 0; i < ra.size(); ++i) {
+    csv.push_back({ra[i], dec[i], delta[i], error[i], caution[i]});
+    if (!std::isfinite(delta[i])) continue;
+    largest = std::max(largest, std::abs(delta[i]));
+    // The half about the opposite pole is the other one.
+    for (const double sign : {1.0, -1.0}) {
+      const double longitude = sign > 0 ? ra[i] : std::fmod(ra[i] + 180, 360);
+      const MapPoint point = on_sky_map(longitude, sign * dec[i]);
+      rows.push_back(
+          {{"x", rounded(point.x, 5)},
+           {"y", rounded(point.y, 5)},
+           {"v", rounded(sign * delta[i], 6)},
+           {"tip", fmt::format("pole at right ascension {:.0f}°, declination {}°\nΔa_B = {} ({:.1f} σ){}", longitude,
+                               signed_fixed(sign * dec[i], 0), signed_with_error(sign * delta[i], error[i]),
+                               std::abs(delta[i]) / error[i], caution[i].empty() ? "" : "\ncaution: " + caution[i])}});
+    }
+  }
+  json spec = sky_spec(input);
+  add_rows(spec, "field", rows);
+  spec["scales"].push_back(diverging_scale(largest));
+  spec["legends"] = {tone_legend("Δa_B, half about the pole minus the other")};
+  spec["marks"].insert(spec["marks"].begin(), field_discs(rows.size()));
+  return {"sky-halves",
+          "Halves of the sky",
+          "a_B of the half of the sky about each direction minus that of the other half; hover for errors. Equal-area "
+          "map (Hammer), right ascension 180° in the middle, east to the left; dashed: plane of the Galaxy.",
+          "full",
+          400,
+          spec,
+          {{"header", {"ra (deg)", "dec (deg)", "delta_ab", "delta_ab_error", "caution"}}, {"rows", csv}},
+          ""};
+}
+
 ChartSection velocity_section(const ChartInput& input) {
   ChartSection section{
       "velocities", "The velocity field on the sky", "Which way the correction for peculiar velocities pulls.", {}};
@@ -144,17 +198,7 @@ ChartSection velocity_section(const ChartInput& input) {
   add_rows(spec, "field", rows);
   spec["scales"].push_back(diverging_scale(largest));
   spec["legends"] = {tone_legend("peculiar velocity (km/s): left towards us, right away")};
-  // Discs that together cover most of the map: its area is 4π in units of the radius squared.
-  const double cell = 4 * 3.14159265 / static_cast<double>(std::max<std::size_t>(1, rows.size()));
-  json discs = {{"type", "symbol"},
-                {"from", {{"data", "field"}}},
-                {"encode",
-                 {{"update",
-                   {{"x", {{"scale", "x"}, {"field", "x"}}},
-                    {"y", {{"scale", "y"}, {"field", "y"}}},
-                    {"shape", {{"value", "circle"}}},
-                    {"size", {{"signal", fmt::format("{} * radius * radius * 0.6", cell)}}},
-                    {"fill", {{"scale", "tone"}, {"field", "v"}}}}}}}};
+  const json discs = field_discs(rows.size());
   spec["marks"].insert(spec["marks"].begin(), discs);
   if (std::any_of(input.all.rows.begin(), input.all.rows.end(),
                   [](const SupernovaRow& row) { return row.used && std::isfinite(row.ra); })) {

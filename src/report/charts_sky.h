@@ -8,4 +8,8 @@ namespace thirdrung {
 /// errors.
 Chart residual_sky_chart(const ChartInput& input);
 
+/// Difference of a_B between the two halves of the sky, over directions of the pole.
+/// @param input with the table sky_halves.
+Chart sky_halves_chart(const ChartInput& input);
+
 }  // namespace thirdrung

@@ -134,6 +134,7 @@ RunTables read_run_tables(const std::filesystem::path& folder) {
   run.sample = read_result_table(folder, "sample");
   run.standardised = read_result_table(folder, "standardised");
   run.zrange_grid = read_result_table(folder, "zrange-grid");
+  run.sky_halves = read_result_table(folder, "sky-halves");
   run.scans = read_result_table(folder, "scans");
   run.budget = read_result_table(folder, "budget");
   run.calibration_derivatives = read_result_table(folder, "calibration-derivatives");

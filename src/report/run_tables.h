@@ -56,8 +56,8 @@ struct RunSummary {
 struct RunTables {
   std::filesystem::path folder;
   RunSummary summary;
-  std::optional<Table> fits, sample, standardised, zrange_grid, scans, budget, calibration_derivatives, influence,
-      fields, join, calibrators;
+  std::optional<Table> fits, sample, standardised, zrange_grid, sky_halves, scans, budget, calibration_derivatives,
+      influence, fields, join, calibrators;
 };
 
 /// Reads what is there. Throws InputError if the folder holds none of the result tables, or if one is malformed.

@@ -26,7 +26,8 @@ double StandardisationResult::error(const std::string& name) const {
 }
 
 StandardisationCoefficients coefficients(const StandardisationResult& result) {
-  return {result.value("alpha"), result.value("beta"), result.value("gamma"), result.value("sigma_int")};
+  return {result.value("alpha"),     result.value("beta"),      result.value("gamma"),
+          result.value("sigma_int"), result.value("intercept"), result.lost_variance};
 }
 
 std::vector<StandardisedMagnitude> standardise(std::span<const StandardisationDatum> data,

@@ -28,6 +28,7 @@ struct StandardisedMagnitude {
   double magnitude = 0.0;
   double fit_variance = 0.0;        ///< a^T C a of the light-curve covariance, a = (1, alpha, -beta) [mag^2].
   double intrinsic_variance = 0.0;  ///< sigma_int^2 + gamma^2 P (1 - P) [mag^2].
+  double selection_bias = 0.0;      ///< Taken off the magnitude (selection.h) [mag].
   /// The same with the true s and c taken at their most probable given the supernova and its population, rather than as
   /// observed: less noise where s and c are poorly measured, at the price of leaning on the population.
   double shrunk_magnitude = 0.0;
@@ -43,16 +44,20 @@ struct StandardisationResult {
   double chi2 = 0.0;  ///< At the maximum; three numbers a supernova for the hierarchical fit, one for the ordinary.
   std::size_t supernovae = 0;
   std::vector<StandardisedMagnitude> magnitudes;  ///< In the order of the data.
-  std::vector<std::string> remarks;               ///< Each a sentence for the user.
+  double lost_variance = 0.0;        ///< Intrinsic variance that a magnitude limit hides from the sample [mag^2].
+  std::vector<std::string> remarks;  ///< Each a sentence for the user.
 
   /// Value of a parameter; throws std::logic_error if there is none of that name.
   double value(const std::string& name) const;
   double error(const std::string& name) const;
 };
 
-/// alpha, beta, gamma and sigma_int as plain numbers.
+/// alpha, beta, gamma, sigma_int and the intercept of the relation as plain numbers.
 struct StandardisationCoefficients {
   double alpha = 0.0, beta = 0.0, gamma = 0.0, sigma_int = 0.0;
+  // For the correction for selection alone:
+  double intercept = 0.0;
+  double lost_variance = 0.0;  ///< As in StandardisationResult.
 };
 StandardisationCoefficients coefficients(const StandardisationResult& result);
 

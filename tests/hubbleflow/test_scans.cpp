@@ -206,3 +206,10 @@ TEST_CASE("two thousand supernovae with a full covariance and every scan", "[.][
   fmt::print("  influence: {} rows\n2000 supernovae, all: {:.1f} s\n", influence(frame).size(), since(start));
   CHECK(since(start) < 180.0);
 }
+
+TEST_CASE("the chance of the largest of many pulls") {
+  CHECK(chance_of_largest_pull(1.959964, 1) == Approx(0.05).epsilon(1e-4));
+  // 1 - 0.95^20.
+  CHECK(chance_of_largest_pull(-1.959964, 20) == Approx(0.641514).epsilon(1e-4));
+  CHECK(chance_of_largest_pull(9.0, 100) == Approx(100 * 2.257e-19).epsilon(1e-3));
+}

@@ -10,6 +10,7 @@
 #include "sample/redshift_frames.h"
 #include "simulation/simulate.h"
 #include "standardisation/hierarchical.h"
+#include "standardisation/selection.h"
 
 namespace thirdrung::testing {
 
@@ -60,8 +61,10 @@ inline std::vector<StandardisationDatum> data_of(std::span<const LightCurveFit> 
 }
 
 /// From light-curve parameters to the intercept, each step with its default settings: redshift range and the usual
-/// limits of colour and stretch, hierarchical standardisation, least squares.
-inline InterceptResult intercept_of(std::span<const StandardisationDatum> all, double sigma_v) {
+/// limits of colour and stretch, hierarchical standardisation (corrected for selection by magnitude limits, if there
+/// are any), least squares.
+inline InterceptResult intercept_of(std::span<const StandardisationDatum> all, double sigma_v,
+                                    const MagnitudeLimits& limits = {}) {
   const InterceptOptions intercept;
   std::vector<StandardisationDatum> data;
   for (const StandardisationDatum& datum : all) {
@@ -69,7 +72,8 @@ inline InterceptResult intercept_of(std::span<const StandardisationDatum> all, d
     if (usual && datum.z_flow > intercept.z_min && datum.z_flow < intercept.z_max) data.push_back(datum);
   }
   const HierarchicalOptions options;
-  const StandardisationResult result = fit_hierarchical(data, options);
+  const auto fit = [&](std::span<const StandardisationDatum> some) { return fit_hierarchical(some, options); };
+  const StandardisationResult result = fit_selected(data, options.host_mass, limits, fit);
   FlowSample sample;
   Eigen::VectorXd variance(static_cast<Eigen::Index>(data.size()));
   for (std::size_t i = 0; i < data.size(); ++i) {

@@ -51,7 +51,7 @@ velocity = "column"
 
 
 def make_survey(folder, count=40, more=""):
-    """Template, run file and simulated tables in `folder`; `more` goes into the simulation file."""
+    """Template, run file and simulated tables in `folder`; `more` are keys of the simulated survey."""
     os.makedirs(folder, exist_ok=True)
     template = os.path.join(folder, "template.fits")
     subprocess.run([os.path.join(TOOLS, "make_template"), template], check=True)

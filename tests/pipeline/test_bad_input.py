@@ -1,6 +1,7 @@
 """Every kind of bad input gets one sentence that names file, row and column, the documented exit code, and leaves no
 result behind; one bad supernova among many is set aside with its reason and the run goes on.
 """
+import json
 import os
 import re
 import shutil
@@ -8,6 +9,9 @@ import subprocess
 import sys
 import tempfile
 import unittest
+
+import numpy as np
+from astropy.io import fits
 
 from pipeline.small_run import RUN, contents, copy_of, make_survey, run, write_run_file
 
@@ -139,7 +143,23 @@ class BadInput(unittest.TestCase):
 
     def test_systematic_of_unknown_passband(self):
         write_run_file(self.folder, '[[systematic]]\nkind = "zero_point"\npassbands = ["lark-q"]\n')
-        self.refused(3, "lark-q", command="check")
+        for command in ("check", "run"):
+            self.refused(3, "run.toml, row %d" % (RUN.count("\n") + 2), "lark-q", command=command)
+
+    def test_systematic_of_unknown_survey(self):
+        write_run_file(self.folder, '[[systematic]]\nkind = "redshift"\nsurveys = ["larkspurr"]\n')
+        for command in ("check", "run"):
+            self.refused(3, "run.toml, row %d" % (RUN.count("\n") + 3), "column surveys", "larkspurr",
+                         "did you mean larkspur?", command=command)
+
+    def test_selection(self):
+        limit = "[[selection]]\nmagnitude_limit = 18\n"
+        for wrong, words in (("[[selection]]\nwidth = 0.1\n", ("column magnitude_limit", "lacks")),
+                             ("[[selection]]\nmagnitude_limit = 18\nsurveys = [\"lark\"]\n", ("column surveys", "lark")),
+                             (limit + limit, ("column surveys", "larkspur", "keep one")),
+                             ('[[systematic]]\nkind = "selection_limit"\n', ("column kind", "[[selection]]"))):
+            write_run_file(self.folder, wrong)
+            self.refused(3, "run.toml", *words)
 
     # Tables.
 
@@ -170,6 +190,39 @@ class BadInput(unittest.TestCase):
     def test_unknown_passband_everywhere(self):
         set_cells(self.photometry, "passband", "lark-q", lambda row, cells: True)
         self.refused(3, "larkspur.ecsv, row 1, column passband", "lark-q")
+
+    def test_one_name_for_two_objects(self):
+        for folder in ("lightcurves", "supernovae"):
+            shutil.copy(path(self.folder, "data", folder, "larkspur.ecsv"), path(self.folder, "data", folder, "teal.ecsv"))
+        write_run_file(self.folder, '[[survey]]\nname = "teal"\nphotometry = "data/lightcurves/teal.ecsv"\n'
+                                    'supernovae = "data/supernovae/teal.ecsv"\n')
+        set_cells(path(self.folder, "data", "supernovae", "teal.ecsv"), "dec", "-89.5",
+                  lambda row, cells: cells["supernova"] == "Lark-003")
+        for command in ("check", "run"):
+            self.refused(3, "teal.ecsv, row 3, column supernova", "Lark-003", "not one supernova", command=command)
+
+    def test_velocity_field_that_does_not_cover(self):
+        def write_field(edge):
+            axis = np.linspace(-edge, edge, 9)
+            header = fits.Header({"BUNIT": "km/s", "VFRAME": "CMB", "VAXES": "GALACTIC", "VSPACE": "REAL"})
+            for n in "123":
+                header.update({"CUNIT" + n: "Mpc/h", "CRPIX" + n: 1.0, "CRVAL" + n: axis[0],
+                               "CDELT" + n: axis[1] - axis[0]})
+            fits.writeto(path(self.folder, "field.fits"), np.full((9, 9, 9), 100, "f4"), header, overwrite=True)
+        text = RUN.replace('velocity = "column"', 'velocity = "grid"\nvelocity_field = "field.fits"')
+        write_run_file(self.folder, text=text)
+        write_field(170)
+        done = run("run", path(self.folder, "run.toml"))
+        self.assertEqual(done.returncode, 0, done.stderr)
+        with open(path(self.folder, "results", "summary.json"), encoding="utf-8") as content:
+            warnings = json.load(content)["warnings"]
+        self.assertTrue([w for w in warnings if re.match("[0-9]+ of [0-9]+ supernovae lie outside the velocity", w)])
+        shutil.rmtree(path(self.folder, "results"))
+        write_field(5)
+        done = run("run", path(self.folder, "run.toml"))
+        self.assertEqual(done.returncode, 3, done.stderr)
+        self.assertEqual(len(done.stderr.strip().split("\n")), 1, done.stderr)
+        self.assertIn("field.fits: covers none of the supernovae", done.stderr)
 
     # One bad supernova among many.
 
@@ -264,6 +317,25 @@ class BadInput(unittest.TestCase):
         done = run("run", path(self.folder, "run.toml"))
         self.assertEqual(done.returncode, 5, done.stderr)
         self.assertIn("cuts.ecsv", done.stderr)
+
+    def test_too_few_in_the_redshift_range(self):
+        write_run_file(self.folder, "[intercept]\nz_min = 0.098\nz_max = 0.1\n")
+        done = run("run", path(self.folder, "run.toml"))
+        self.assertEqual(done.returncode, 5, done.stderr)
+        self.assertEqual(len(done.stderr.strip().split("\n")), 1, done.stderr)
+        self.assertIn("10 are needed", done.stderr)
+        left = contents(path(self.folder, "results"))
+        self.assertIn("cuts.ecsv", left)
+        for name in ("magnitudes.ecsv", "intercept.ecsv", "summary.json"):
+            self.assertNotIn(name, left)
+        self.assertFalse([name for name in left if ".unfinished" in name], left)
+
+    def test_output_without_permission(self):
+        if os.geteuid() == 0:
+            self.skipTest("nothing is forbidden to root")
+        os.makedirs(path(self.folder, "results"))
+        os.chmod(path(self.folder, "results"), 0o555)
+        self.refused(4, "results", "cannot be")
 
     def test_command_line(self):
         self.assertEqual(run("run").returncode, 2)

@@ -4,6 +4,7 @@
 
 #include "pipeline/closure_chain.h"
 #include "simulation/small_survey.h"
+#include "standardisation/deviates.h"
 #include "template/gauged_template.h"
 
 using namespace thirdrung;
@@ -61,4 +62,30 @@ TEST_CASE("over many surveys the intercept has no bias and the error it states",
   // Three and a half errors of the mean and of the width of 300 normal deviates.
   CHECK(std::abs(closure.mean_pull()) < 3.5 / std::sqrt(300.0));
   CHECK(std::abs(closure.pull_width() - 1) < 3.5 / std::sqrt(600.0));
+}
+
+// A magnitude limit takes the faint half away from the far end of a survey: without correction the intercept is off by
+// more than its error, with it the intercept comes back.
+TEST_CASE("a magnitude limit biases the intercept, and the correction takes that back", "[closure]") {
+  Closure plain, corrected;
+  const MagnitudeLimit limit{18.6, 0.2};
+  for (std::uint64_t seed = 1; seed <= 100; ++seed) {
+    SimulationOptions options = survey_like_the_demo(seed);
+    options.surveys[0].supernovae = 400;
+    std::vector<SimulatedSummary> found;
+    Deviates deviates(seed);
+    for (const SimulatedSummary& one : simulate_summaries(options)) {
+      if (one.truth.m_b + limit.width * deviates.normal() < limit.m_b) found.push_back(one);
+    }
+    const auto data = data_of(found, frames());
+    plain.add(intercept_of(data, options.velocities.sigma_v), options.relation.a_b());
+    corrected.add(intercept_of(data, options.velocities.sigma_v, {{options.surveys[0].name, limit}}),
+                  options.relation.a_b());
+  }
+  INFO("mean offset " << plain.offset_sum / plain.count << " without, " << corrected.offset_sum / corrected.count
+                      << " with the correction; mean error " << corrected.error_sum / corrected.count << ", mean pull "
+                      << corrected.mean_pull() << ", width " << corrected.pull_width());
+  CHECK(plain.mean_pull() > 1);
+  CHECK(std::abs(corrected.mean_pull()) < 4 / std::sqrt(100.0));
+  CHECK(corrected.pull_width() < 1.3);
 }

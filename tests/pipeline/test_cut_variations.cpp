@@ -4,7 +4,7 @@
 
 using namespace thirdrung;
 
-TEST_CASE("every numeric rule is varied both ways, and the others stay") {
+TEST_CASE("every numeric rule is varied both ways, that on host masses turned round, and the others stay") {
   CutLimits limits;
   limits.mw_ebv_max.reset();
   const auto variations = cut_variations(limits);
@@ -20,5 +20,7 @@ TEST_CASE("every numeric rule is varied both ways, and the others stay") {
   }
   CHECK(tighter_colour);
   CHECK(looser_colour);
-  CHECK(variations.size() % 2 == 0);
+  CHECK(variations.size() % 2 == 1);
+  CHECK(variations.back().limits.host_mass);
+  CHECK(variations.back().setting == "hosts with a mass alone (tighter)");
 }

@@ -26,9 +26,9 @@ def start(folder):
                             stderr=subprocess.PIPE, text=True)
 
 
-def chunks(folder):
+def chunks(folder, stem="lightcurves-"):
     resume = path(folder, "results", "resume")
-    return len([n for n in os.listdir(resume) if n.startswith("lightcurves-")]) if os.path.isdir(resume) else 0
+    return len([n for n in os.listdir(resume) if n.startswith(stem)]) if os.path.isdir(resume) else 0
 
 
 class Resume(unittest.TestCase):
@@ -76,6 +76,18 @@ class Resume(unittest.TestCase):
             going.kill()
             going.communicate()
         self.finish()
+
+    def test_half_written_files_are_removed(self):
+        os.makedirs(path(self.folder, "results", "resume"))
+        gone = subprocess.Popen(["true"])
+        gone.wait()
+        left = [path(self.folder, "results", *where, ".unfinished-%d-table.ecsv" % gone.pid)
+                for where in ((), ("resume",))]
+        for file in left:
+            with open(file, "w", encoding="utf-8") as out:
+                out.write("half")
+        self.finish()
+        self.assertFalse([file for file in left if os.path.exists(file)])
 
     def test_asked_to_stop(self):
         code, errors = self.stop_with(signal.SIGINT)
@@ -170,6 +182,91 @@ class Resume(unittest.TestCase):
             record = json.load(provenance)["unblinding"]
         self.assertEqual(record["by"], "A. Nother")
         self.assertTrue(record["run_file_changed_since"])
+
+
+SYSTEMATICS = """
+[[systematic]]
+kind = "zero_point"
+[[systematic]]
+kind = "milky_way_scale"
+[[systematic]]
+kind = "velocity_scatter"
+[[systematic]]
+kind = "redshift"
+"""
+
+
+class ResumeSystematics(unittest.TestCase):
+    """A run that is killed among its systematics goes on there, to the same bytes."""
+
+    @classmethod
+    def setUpClass(cls):
+        cls.survey = copy_of(SURVEY)
+        write_run_file(cls.survey, SYSTEMATICS)
+        for command in ("fit", "select", "standardise"):
+            done = run(command, path(cls.survey, "run.toml"))
+            assert done.returncode == 0, done.stderr
+        whole = copy_of(cls.survey)
+        done = run("run", path(whole, "run.toml"))
+        assert done.returncode == 0, done.stderr
+        cls.reference = contents(path(whole, "results"))
+        shutil.rmtree(os.path.dirname(whole))
+
+    @classmethod
+    def tearDownClass(cls):
+        shutil.rmtree(os.path.dirname(cls.survey))
+
+    def setUp(self):
+        self.folder = copy_of(self.survey)
+
+    def tearDown(self):
+        shutil.rmtree(os.path.dirname(self.folder), ignore_errors=True)
+
+    def saved(self):
+        resume = path(self.folder, "results", "resume")
+        return sorted(path(resume, name) for name in os.listdir(resume) if name.startswith("shift-"))
+
+    def stop_with(self, which, count):
+        going = start(self.folder)
+        while going.poll() is None and chunks(self.folder, "shift-") < count:
+            time.sleep(0.001)
+        going.send_signal(which)
+        going.communicate()
+        return going.returncode
+
+    def finish(self):
+        done = run("run", path(self.folder, "run.toml"))
+        self.assertEqual(done.returncode, 0, done.stderr)
+        self.assertEqual(contents(path(self.folder, "results")), self.reference)
+        self.assertEqual(self.saved(), [])
+
+    def test_killed(self):
+        self.assertEqual(self.stop_with(signal.SIGKILL, 2), -signal.SIGKILL)
+        self.assertNotIn("systematic-shifts.fits", contents(path(self.folder, "results")))
+        before = {file: os.stat(file).st_mtime_ns for file in self.saved()}
+        self.assertGreaterEqual(len(before), 2)
+        self.assertEqual(self.stop_with(signal.SIGINT, len(before) + 1), 130)
+        for file, when in before.items():
+            self.assertEqual(os.stat(file).st_mtime_ns, when)
+        self.finish()
+
+    def test_damaged_and_foreign_shifts_are_found_again(self):
+        self.stop_with(signal.SIGKILL, 2)
+        first, second = self.saved()[:2]
+        shutil.copy(first, second)
+        with open(first, "wb") as out:
+            out.write(b"SIMPLE")
+        self.finish()
+
+    def test_what_is_saved_stays_when_a_systematic_is_added(self):
+        self.stop_with(signal.SIGKILL, 2)
+        before = {file: os.stat(file).st_mtime_ns for file in self.saved()}
+        write_run_file(self.folder, SYSTEMATICS + '[[systematic]]\nkind = "q0"\n')
+        self.stop_with(signal.SIGKILL, len(before) + 1)
+        for file, when in before.items():
+            self.assertEqual(os.stat(file).st_mtime_ns, when)
+        write_run_file(self.folder, SYSTEMATICS)
+        self.finish()
 
 
 if __name__ == "__main__":

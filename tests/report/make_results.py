@@ -206,6 +206,9 @@ def main():
         for k, (host, m) in enumerate(zip(hosts, absolute))])
     tables["join"] = ("quantity:t value:f error:f", [("h0", 73.04, 1.9, ), ("m_b", -19.24, 0.045), ("correlation", 0.92, math.nan), ("calibrators", 6.0, math.nan)] + [
         ("share_of_" + side, share, math.nan) for side, share in (("calibrators", 0.71), ("hubble_flow", 0.11), ("coefficients", 0.05), ("systematics", 0.13))])
+    poles = [(math.fmod(k * 137.508, 360), math.degrees(math.asin((k + 0.5) / 96))) for k in range(96)]
+    tables["sky-halves"] = ("ra:f:deg dec:f:deg supernovae:i delta_ab:f delta_ab_error:f caution:t", [
+        (ra, dec, n_used, 0.004 * math.cos(math.radians(ra - 30)) * math.cos(math.radians(dec)), 0.0021, "most extreme of 96" if k == 0 else "") for k, (ra, dec) in enumerate(poles)])
     for name, (columns, rows) in tables.items():
         if name not in without:
             write(folder, name + ".ecsv", spec(columns), rows)

@@ -1,0 +1,82 @@
+"""Choices of a run file against what a rerun with another choice gives: the scatter of velocities as a systematic, and
+the correction for a survey's magnitude limit.
+"""
+import csv
+import os
+import shutil
+import sys
+import tempfile
+import unittest
+
+from pipeline.small_run import RUN, copy_of, make_survey, run, write_run_file
+
+SURVEY = None
+SELECTION = """
+[[selection]]
+surveys = ["larkspur"]
+magnitude_limit = %g
+width = 0.3
+"""
+
+
+def table(folder, name):
+    with open(os.path.join(folder, "results", name + ".ecsv"), encoding="utf-8") as text:
+        return list(csv.DictReader(line for line in text if not line.startswith("#")))
+
+
+class Choices(unittest.TestCase):
+    def setUp(self):
+        self.folder = copy_of(SURVEY)
+
+    def tearDown(self):
+        shutil.rmtree(os.path.dirname(self.folder), ignore_errors=True)
+
+    def a_b(self, more="", text=RUN):
+        """Runs, and gives a_B; the light curves are kept from before."""
+        done = run("run", write_run_file(self.folder, more, text=text), "--no-page")
+        self.assertEqual(done.returncode, 0, done.stderr)
+        return next(float(row["value"]) for row in table(self.folder, "intercept") if row["quantity"] == "a_b")
+
+    def contribution(self, source):
+        return next(float(row["ab_contribution"]) for row in table(self.folder, "budget") if row["source"] == source)
+
+    def test_velocity_scatter(self):
+        before, after = (self.a_b(text=RUN + "sigma_v = %d\n" % v) for v in (250, 350))
+        with_it = self.a_b('[[systematic]]\nkind = "velocity_scatter"\nsize = 100\n')
+        self.assertAlmostEqual(with_it, before, delta=1e-12)
+        self.assertGreater(abs(after - before), 1e-6)
+        self.assertAlmostEqual(self.contribution("velocity scatter"), abs(after - before), delta=1e-9)
+
+    def test_selection(self):
+        plain = self.a_b()
+        corrected = self.a_b(SELECTION % 18.3 + "[scans]\ncorrections = true\n")
+        off = next(row for row in table(self.folder, "scans") if row["setting"] == "without selection")
+        self.assertLess(corrected, plain - 0.001)
+        # The row holds the coefficients, the rerun fits them again.
+        self.assertAlmostEqual(float(off["delta_ab"]), plain - corrected, delta=0.3 * (plain - corrected))
+        self.assertGreater(float(off["delta_ab_error"]), 0)
+        biases = [float(row["selection_bias"]) for row in table(self.folder, "magnitudes")]
+        self.assertLessEqual(max(biases), 0)
+        self.assertLess(min(biases), -0.03)
+
+    def test_limit_that_nothing_reaches(self):
+        self.assertAlmostEqual(self.a_b(SELECTION % 25), self.a_b(), delta=1e-9)
+
+    def test_selection_limit(self):
+        limit = '[[systematic]]\nkind = "selection_limit"\nsize = 0.1\n'
+        before, after = self.a_b(SELECTION % 18.3), self.a_b(SELECTION % 18.4)
+        self.a_b(SELECTION % 18.3 + limit)
+        self.assertAlmostEqual(self.contribution("magnitude limit"), abs(after - before), delta=0.1 * abs(after - before))
+
+
+if __name__ == "__main__":
+    scratch = tempfile.mkdtemp(prefix="thirdrung-survey-")
+    try:
+        SURVEY = make_survey(os.path.join(scratch, "survey"), 60, "peak_limit = 18.3\npeak_limit_width = 0.3\n")
+        done = run("fit", os.path.join(SURVEY, "run.toml"))
+        if done.returncode != 0:
+            sys.exit("the fits failed: " + done.stderr)
+        outcome = unittest.main(exit=False).result
+    finally:
+        shutil.rmtree(scratch)
+    sys.exit(0 if outcome.wasSuccessful() else 1)
