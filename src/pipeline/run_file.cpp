@@ -37,15 +37,6 @@ constexpr std::array<KnownSection, 15> known_sections = {{{"run", read_run_secti
                                                           {"join", read_join_section, false},
                                                           {"report", read_report_section, false}}};
 
-toml::table parse(const std::string& content, const std::string& file) {
-  try {
-    return toml::parse(content, file);
-  } catch (const toml::parse_error& fault) {
-    throw InputError({file, std::size_t{fault.source().begin.line}, ""}, std::string(fault.description()),
-                     "mend the TOML there");
-  }
-}
-
 void refuse_unknown_sections(const toml::table& root, const std::string& file) {
   std::vector<std::string> names;
   for (const KnownSection& known : known_sections) names.emplace_back(known.name);
@@ -99,7 +90,7 @@ RunFile read_run_file(const std::filesystem::path& path) {
   RunFile run;
   run.path = path;
   run.text = read_text_file(path);
-  const toml::table root = parse(run.text, file);
+  const toml::table root = parse_toml(run.text, file);
   refuse_unknown_sections(root, file);
   for (const KnownSection& known : known_sections) {
     const toml::node* node = root.get(known.name);

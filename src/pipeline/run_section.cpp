@@ -36,6 +36,15 @@ std::string expanded(const std::string& written, const Place& place) {
 
 }  // namespace
 
+toml::table parse_toml(const std::string& text, const std::string& file) {
+  try {
+    return toml::parse(text, file);
+  } catch (const toml::parse_error& fault) {
+    throw InputError({file, std::size_t{fault.source().begin.line}, ""}, std::string(fault.description()),
+                     "mend the TOML there");
+  }
+}
+
 void require_exists(const InputFile& file) {
   std::error_code ignored;
   if (fs::exists(file.path, ignored)) return;

@@ -14,6 +14,9 @@
 
 namespace thirdrung {
 
+/// A TOML text as a table; throws InputError at the line of `file` that is not TOML.
+toml::table parse_toml(const std::string& text, const std::string& file);
+
 /// One section of a TOML file, read strictly.
 ///
 /// Each getter notes the key that it was asked for; done() then refuses every key that nobody asked for, with the
@@ -36,6 +39,8 @@ class RunSection {
   std::optional<std::string> optional_text(const std::string& key);
   double number(const std::string& key, double otherwise);
   std::optional<double> optional_number(const std::string& key);
+  /// Leaves `value` as it is if the key is absent.
+  void read_number(const std::string& key, double& value) { value = number(key, value); }
   std::int64_t integer(const std::string& key, std::int64_t otherwise, std::int64_t least);
   bool flag(const std::string& key, bool otherwise);
   /// A number in [low, high].

@@ -11,66 +11,52 @@ namespace thirdrung {
 
 namespace {
 
-toml::table parse(const std::filesystem::path& path) {
-  const std::string content = read_text_file(path);
-  try {
-    return toml::parse(content, path.string());
-  } catch (const toml::parse_error& fault) {
-    throw InputError({path.string(), std::size_t{fault.source().begin.line}, {}}, std::string(fault.description()),
-                     "mend the TOML there");
-  }
-}
-
 double required(RunSection& section, const std::string& key) {
   const auto value = section.optional_number(key);
   if (!value) throw InputError(section.place(key), fmt::format("{} lacks the key {}", section.name(), key), "give it");
   return *value;
 }
 
-void read_number(RunSection& section, const char* key, double& value) {
-  value = section.number(key, value);
-}
-
 SimulatedRelation read_relation(RunSection section) {
   SimulatedRelation out;
-  read_number(section, "h0", out.h0);
-  read_number(section, "absolute_magnitude", out.absolute_magnitude);
-  read_number(section, "q0", out.expansion.q0);
-  read_number(section, "j0", out.expansion.j0);
-  read_number(section, "alpha", out.alpha);
-  read_number(section, "beta", out.beta);
-  read_number(section, "gamma", out.gamma);
-  read_number(section, "mass_step", out.mass_step);
-  read_number(section, "sigma_int", out.sigma_int);
+  section.read_number("h0", out.h0);
+  section.read_number("absolute_magnitude", out.absolute_magnitude);
+  section.read_number("q0", out.expansion.q0);
+  section.read_number("j0", out.expansion.j0);
+  section.read_number("alpha", out.alpha);
+  section.read_number("beta", out.beta);
+  section.read_number("gamma", out.gamma);
+  section.read_number("mass_step", out.mass_step);
+  section.read_number("sigma_int", out.sigma_int);
   section.done();
   return out;
 }
 
 SimulatedPopulation read_population(RunSection section) {
   SimulatedPopulation out;
-  read_number(section, "s_peak", out.s_peak);
-  read_number(section, "s_width_below", out.s_width_below);
-  read_number(section, "s_width_above", out.s_width_above);
-  read_number(section, "s_min", out.s_min);
-  read_number(section, "s_max", out.s_max);
-  read_number(section, "c_mean", out.c_mean);
-  read_number(section, "c_width", out.c_width);
-  read_number(section, "c_tail", out.c_tail);
-  read_number(section, "c_max", out.c_max);
-  read_number(section, "mass_mean", out.mass_mean);
-  read_number(section, "mass_width", out.mass_width);
-  read_number(section, "mass_error", out.mass_error);
-  read_number(section, "mass_missing", out.mass_missing);
+  section.read_number("s_peak", out.s_peak);
+  section.read_number("s_width_below", out.s_width_below);
+  section.read_number("s_width_above", out.s_width_above);
+  section.read_number("s_min", out.s_min);
+  section.read_number("s_max", out.s_max);
+  section.read_number("c_mean", out.c_mean);
+  section.read_number("c_width", out.c_width);
+  section.read_number("c_tail", out.c_tail);
+  section.read_number("c_max", out.c_max);
+  section.read_number("mass_mean", out.mass_mean);
+  section.read_number("mass_width", out.mass_width);
+  section.read_number("mass_error", out.mass_error);
+  section.read_number("mass_missing", out.mass_missing);
   section.done();
   return out;
 }
 
 SimulatedVelocities read_velocities(RunSection section) {
   SimulatedVelocities out;
-  read_number(section, "sigma_v", out.sigma_v);
-  read_number(section, "bulk_speed", out.bulk_speed);
-  read_number(section, "bulk_l", out.bulk_direction.l);
-  read_number(section, "bulk_b", out.bulk_direction.b);
+  section.read_number("sigma_v", out.sigma_v);
+  section.read_number("bulk_speed", out.bulk_speed);
+  section.read_number("bulk_l", out.bulk_direction.l);
+  section.read_number("bulk_b", out.bulk_direction.b);
   out.bulk_tabulated = section.flag("bulk_tabulated", out.bulk_tabulated);
   section.done();
   return out;
@@ -79,11 +65,11 @@ SimulatedVelocities read_velocities(RunSection section) {
 SimulatedMilkyWay read_milky_way(RunSection section) {
   SimulatedMilkyWay out;
   out.law = dust_law_from_name(section.text("law", name_of(out.law)), section.place("law"));
-  read_number(section, "r_v", out.r_v);
-  read_number(section, "ebv_at_pole", out.ebv_at_pole);
-  read_number(section, "clumpiness", out.clumpiness);
-  read_number(section, "ebv_max", out.ebv_max);
-  read_number(section, "table_error", out.table_error);
+  section.read_number("r_v", out.r_v);
+  section.read_number("ebv_at_pole", out.ebv_at_pole);
+  section.read_number("clumpiness", out.clumpiness);
+  section.read_number("ebv_max", out.ebv_max);
+  section.read_number("table_error", out.table_error);
   section.done();
   return out;
 }
@@ -93,11 +79,11 @@ SimulatedPassband read_passband(RunSection section) {
   out.id = section.text("id");
   out.centre = required(section, "centre");
   out.width = required(section, "width");
-  read_number(section, "edge", out.edge);
-  read_number(section, "zero_point_error", out.zero_point_error);
-  read_number(section, "wavelength_error", out.wavelength_error);
-  read_number(section, "zero_point_shift", out.zero_point_shift);
-  read_number(section, "wavelength_shift", out.wavelength_shift);
+  section.read_number("edge", out.edge);
+  section.read_number("zero_point_error", out.zero_point_error);
+  section.read_number("wavelength_error", out.wavelength_error);
+  section.read_number("zero_point_shift", out.zero_point_shift);
+  section.read_number("wavelength_shift", out.wavelength_shift);
   section.done();
   return out;
 }
@@ -115,25 +101,25 @@ std::vector<SurveyBand> read_bands(RunSection& section) {
 }
 
 void read_schedule(RunSection& section, SimulatedSurvey& out) {
-  read_number(section, "first_mjd", out.first_mjd);
+  section.read_number("first_mjd", out.first_mjd);
   out.seasons = static_cast<int>(std::min<std::int64_t>(section.integer("seasons", out.seasons, 1), 1000));
-  read_number(section, "season_length", out.season_length);
-  read_number(section, "cadence", out.cadence);
-  read_number(section, "cadence_scatter", out.cadence_scatter);
-  read_number(section, "lost", out.lost);
-  read_number(section, "first_phase", out.first_phase);
-  read_number(section, "first_phase_scatter", out.first_phase_scatter);
-  read_number(section, "last_phase", out.last_phase);
-  read_number(section, "depth_scatter", out.depth_scatter);
-  read_number(section, "noise_floor", out.noise_floor);
+  section.read_number("season_length", out.season_length);
+  section.read_number("cadence", out.cadence);
+  section.read_number("cadence_scatter", out.cadence_scatter);
+  section.read_number("lost", out.lost);
+  section.read_number("first_phase", out.first_phase);
+  section.read_number("first_phase_scatter", out.first_phase_scatter);
+  section.read_number("last_phase", out.last_phase);
+  section.read_number("depth_scatter", out.depth_scatter);
+  section.read_number("noise_floor", out.noise_floor);
   out.magnitudes = section.flag("magnitudes", out.magnitudes);
 }
 
 void read_selection(RunSection& section, SimulatedSurvey& out) {
   out.detections = static_cast<int>(std::min<std::int64_t>(section.integer("detections", out.detections, 0), 1000));
-  read_number(section, "detection_snr", out.detection_snr);
-  read_number(section, "peak_limit", out.peak_limit);
-  read_number(section, "peak_limit_width", out.peak_limit_width);
+  section.read_number("detection_snr", out.detection_snr);
+  section.read_number("peak_limit", out.peak_limit);
+  section.read_number("peak_limit_width", out.peak_limit_width);
   out.shared_with = section.text("shared_with", out.shared_with);
   out.shared = static_cast<std::size_t>(section.integer("shared", 0, 0));
 }
@@ -143,14 +129,14 @@ SimulatedSurvey read_survey(RunSection section) {
   out.name = section.text("name");
   out.prefix = section.text("prefix", out.prefix);
   out.supernovae = static_cast<std::size_t>(section.integer("supernovae", 100, 0));
-  read_number(section, "z_min", out.z_min);
-  read_number(section, "z_max", out.z_max);
-  read_number(section, "z_error", out.z_error);
-  read_number(section, "dec_min", out.footprint.dec_min);
-  read_number(section, "dec_max", out.footprint.dec_max);
-  read_number(section, "ra_min", out.footprint.ra_min);
-  read_number(section, "ra_max", out.footprint.ra_max);
-  read_number(section, "galactic_latitude_min", out.footprint.galactic_latitude_min);
+  section.read_number("z_min", out.z_min);
+  section.read_number("z_max", out.z_max);
+  section.read_number("z_error", out.z_error);
+  section.read_number("dec_min", out.footprint.dec_min);
+  section.read_number("dec_max", out.footprint.dec_max);
+  section.read_number("ra_min", out.footprint.ra_min);
+  section.read_number("ra_max", out.footprint.ra_max);
+  section.read_number("galactic_latitude_min", out.footprint.galactic_latitude_min);
   out.bands = read_bands(section);
   read_schedule(section, out);
   read_selection(section, out);
@@ -163,10 +149,10 @@ SimulatedCalibrators read_calibrators(RunSection section) {
   out.supernovae = static_cast<std::size_t>(section.integer("supernovae", 0, 0));
   out.shared_hosts = static_cast<std::size_t>(section.integer("shared_hosts", 0, 0));
   out.surveys = section.texts("surveys");
-  read_number(section, "z_min", out.z_min);
-  read_number(section, "z_max", out.z_max);
-  read_number(section, "modulus_error", out.modulus_error);
-  read_number(section, "common_error", out.common_error);
+  section.read_number("z_min", out.z_min);
+  section.read_number("z_max", out.z_max);
+  section.read_number("modulus_error", out.modulus_error);
+  section.read_number("common_error", out.common_error);
   out.prefix = section.text("prefix", out.prefix);
   out.host_prefix = section.text("host_prefix", out.host_prefix);
   section.done();
@@ -193,7 +179,7 @@ std::vector<RunSection> each(const toml::table& file, const std::string& path, c
 }  // namespace
 
 SimulationOptions read_simulation_file(const std::filesystem::path& path) {
-  const toml::table file = parse(path);
+  const toml::table file = parse_toml(read_text_file(path), path.string());
   const std::string name = path.string();
   RunSection whole(file, name, "the simulation file");
   SimulationOptions out;
