@@ -3,6 +3,7 @@
 #include <fmt/format.h>
 #include <toml++/toml.h>
 
+#include "base/atomic_file.h"
 #include "base/text.h"
 #include "light/passband_catalogue.h"
 #include "lightcurve/photometry.h"
@@ -19,30 +20,18 @@ namespace thirdrung {
 
 namespace {
 
-toml::table parse(const std::filesystem::path& path, const std::string& content) {
-  try {
-    return toml::parse(content, path.string());
-  } catch (const toml::parse_error& fault) {
-    throw InputError({path.string(), std::size_t{fault.source().begin.line}, {}}, std::string(fault.description()),
-                     "mend the TOML there");
-  }
-}
-
-void read_number(RunSection& section, const char* key, double& value) {
-  value = section.number(key, value);
-}
 void read_count(RunSection& section, const char* key, int& value) {
   value = static_cast<int>(section.integer(key, value, 1));
 }
 
 void read_grids(RunSection section, TemplateBasesOptions& grids) {
-  read_number(section, "phase_step", grids.phase_step);
-  read_number(section, "fine_first", grids.fine_first);
-  read_number(section, "fine_last", grids.fine_last);
-  read_number(section, "fine_step", grids.fine_step);
-  read_number(section, "coarse_step", grids.coarse_step);
-  read_number(section, "usable_blue", grids.usable_blue);
-  read_number(section, "usable_red", grids.usable_red);
+  section.read_number("phase_step", grids.phase_step);
+  section.read_number("fine_first", grids.fine_first);
+  section.read_number("fine_last", grids.fine_last);
+  section.read_number("fine_step", grids.fine_step);
+  section.read_number("coarse_step", grids.coarse_step);
+  section.read_number("usable_blue", grids.usable_blue);
+  section.read_number("usable_red", grids.usable_red);
   section.done();
 }
 
@@ -50,25 +39,25 @@ void read_cuts(RunSection section, TrainingCuts& cuts) {
   read_count(section, "least_bands", cuts.least_bands);
   read_count(section, "least_epochs", cuts.least_epochs);
   read_count(section, "least_near_peak", cuts.least_near_peak);
-  read_number(section, "earliest", cuts.earliest);
-  read_number(section, "latest", cuts.latest);
-  read_number(section, "first_phase", cuts.first_phase);
-  read_number(section, "most_reddening", cuts.most_reddening);
-  read_number(section, "s_min", cuts.s_min);
-  read_number(section, "s_max", cuts.s_max);
-  read_number(section, "most_colour", cuts.most_colour);
-  read_number(section, "most_chi2_per_dof", cuts.most_chi2_per_dof);
-  read_number(section, "error_floor", cuts.error_floor);
+  section.read_number("earliest", cuts.earliest);
+  section.read_number("latest", cuts.latest);
+  section.read_number("first_phase", cuts.first_phase);
+  section.read_number("most_reddening", cuts.most_reddening);
+  section.read_number("s_min", cuts.s_min);
+  section.read_number("s_max", cuts.s_max);
+  section.read_number("most_colour", cuts.most_colour);
+  section.read_number("most_chi2_per_dof", cuts.most_chi2_per_dof);
+  section.read_number("error_floor", cuts.error_floor);
   section.done();
 }
 
 void read_solver(RunSection section, TrainerOptions& trainer) {
-  read_number(section, "s_mean", trainer.prior.s_mean);
-  read_number(section, "s_width", trainer.prior.s_width);
-  read_number(section, "c_mean", trainer.prior.c_mean);
-  read_number(section, "c_width", trainer.prior.c_width);
-  read_number(section, "robust_degrees", trainer.robust_degrees);
-  read_number(section, "tolerance", trainer.tolerance);
+  section.read_number("s_mean", trainer.prior.s_mean);
+  section.read_number("s_width", trainer.prior.s_width);
+  section.read_number("c_mean", trainer.prior.c_mean);
+  section.read_number("c_width", trainer.prior.c_width);
+  section.read_number("robust_degrees", trainer.robust_degrees);
+  section.read_number("tolerance", trainer.tolerance);
   read_count(section, "iterations", trainer.iterations);
   read_count(section, "scatter_rounds", trainer.scatter_rounds);
   section.done();
@@ -78,14 +67,14 @@ void read_smoothing(RunSection section, TrainingSetup& setup) {
   setup.choose_smoothing = section.flag("cross_validate", true);
   read_count(section, "folds", setup.cross_validation.folds);
   read_count(section, "sweeps", setup.cross_validation.sweeps);
-  read_number(section, "factor", setup.cross_validation.factor);
+  section.read_number("factor", setup.cross_validation.factor);
   Smoothness& smoothness = setup.trainer.smoothness;
-  read_number(section, "phi_phase", smoothness.phi_phase);
-  read_number(section, "phi_wavelength", smoothness.phi_wavelength);
-  read_number(section, "gamma_phase", smoothness.gamma_phase);
-  read_number(section, "gamma_wavelength", smoothness.gamma_wavelength);
-  read_number(section, "gamma_size", smoothness.gamma_size);
-  read_number(section, "colour", smoothness.colour);
+  section.read_number("phi_phase", smoothness.phi_phase);
+  section.read_number("phi_wavelength", smoothness.phi_wavelength);
+  section.read_number("gamma_phase", smoothness.gamma_phase);
+  section.read_number("gamma_wavelength", smoothness.gamma_wavelength);
+  section.read_number("gamma_size", smoothness.gamma_size);
+  section.read_number("colour", smoothness.colour);
   section.done();
 }
 
@@ -94,11 +83,11 @@ void read_spectra(RunSection section, TrainingFile& out) {
   SpectraOptions& o = out.spectra_options;
   o.phase_qualities = section.text("phase_qualities", o.phase_qualities);
   if (section.has("subtypes")) o.subtypes = section.texts("subtypes");
-  read_number(section, "least_match", o.least_match);
-  read_number(section, "most_phase_mismatch", o.most_phase_mismatch);
-  read_number(section, "warp_step", o.warp_step);
-  read_number(section, "correlation_length", o.correlation_length);
-  read_number(section, "phase_error", o.phase_error);
+  section.read_number("least_match", o.least_match);
+  section.read_number("most_phase_mismatch", o.most_phase_mismatch);
+  section.read_number("warp_step", o.warp_step);
+  section.read_number("correlation_length", o.correlation_length);
+  section.read_number("phase_error", o.phase_error);
   out.setup.trainer.spectra_correlation_length = o.correlation_length;
   section.done();
 }
@@ -143,6 +132,18 @@ std::vector<TrainingCandidate> read_candidates(const TrainingFile& file, bool ch
   return out;
 }
 
+void make_folders(const TrainingOutput& output) {
+  std::vector<std::filesystem::path> folders = {output.folder};
+  if (output.template_file.has_parent_path()) folders.push_back(output.template_file.parent_path());
+  for (const std::filesystem::path& folder : folders) {
+    std::error_code error;
+    std::filesystem::create_directories(folder, error);
+    if (error) throw OutputError(fmt::format("{}: cannot be made a folder: {}.", folder.string(), error.message()));
+    write_file_atomically(folder / ".can-be-written", "");
+    std::filesystem::remove(folder / ".can-be-written", error);
+  }
+}
+
 std::vector<std::pair<std::string, std::string>> provenance_of(const TrainingFile& file, const TrainingResult& result) {
   std::vector<std::pair<std::string, std::string>> out = {{"program", program_version()},
                                                           {"training_file_sha256", sha256_of_text(file.content)}};
@@ -177,7 +178,7 @@ TrainingFile read_training_file(const std::filesystem::path& path) {
   TrainingFile out;
   out.path = path;
   out.content = read_text_file(path);
-  const toml::table root = parse(path, out.content);
+  const toml::table root = parse_toml(out.content, path.string());
   const std::string file = path.string();
   RunSection top(root, file, "the training file");
   top.know(std::vector<std::string>{"survey", "passbands", "milky_way", "grids", "cuts", "spectra", "smoothing",
@@ -216,6 +217,8 @@ TrainingResult train_from_file(const TrainingFile& file, const TrainingOutput& o
     require_exists(survey.photometry);
     require_exists(survey.supernovae);
   }
+  // Before the long part: a place that cannot be written is found out now.
+  make_folders(output);
   std::optional<Spectrum> star;
   if (file.standard_star.given()) star = read_spectrum(read_table(file.standard_star.path));
   const PassbandCatalogue catalogue = PassbandCatalogue::read(file.catalogue.path, star);
@@ -231,9 +234,9 @@ TrainingResult train_from_file(const TrainingFile& file, const TrainingOutput& o
   std::vector<SetAside> check_set_aside;
   result.check = check_on_other_surveys(read_candidates(file, true, catalogue, check_set_aside), result.trained.model,
                                         catalogue, Extinction(file.dust_law, file.r_v), setup);
+  result.spectra_left_out = std::move(spectra_left_out);
   result.selection.left_out.insert(result.selection.left_out.begin(), set_aside.begin(), set_aside.end());
   result.trained.model.provenance = provenance_of(file, result);
-  std::filesystem::create_directories(output.folder);
   write_template(result.trained, output.template_file);
   write_table(training_set_table(result), output.folder / "training-set.ecsv");
   write_table(left_out_table(result), output.folder / "left-out.ecsv");

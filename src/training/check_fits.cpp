@@ -8,18 +8,7 @@ namespace thirdrung {
 
 namespace {
 
-LightCurveFits fits_of(std::span<const TrainingCandidate> candidates, const SpectralTemplate& model,
-                       const PassbandCatalogue& catalogue, const Extinction& dust, const TrainingSetup& setup) {
-  std::vector<LightCurve> light_curves;
-  std::vector<Supernova> supernovae;
-  for (const TrainingCandidate& candidate : candidates) {
-    light_curves.push_back(candidate.light_curve);
-    supernovae.push_back(candidate.supernova);
-  }
-  return fit_all(light_curves, supernovae, PreparedTemplate(model), catalogue, dust, setup.fit, setup.trainer.threads);
-}
-
-/// Offsets from the trusted fits alone: a peculiar supernova says nothing of a zero point.
+/// Offsets from the fits of a sound χ² alone: a peculiar supernova says nothing of a zero point.
 std::vector<ZeroPointOffset> offsets_of(std::span<const TrainingCandidate> candidates, const LightCurveFits& fits,
                                         const SpectralTemplate& model, const PassbandCatalogue& catalogue,
                                         const Extinction& dust, const TrainingSetup& setup) {
@@ -47,12 +36,23 @@ std::vector<ZeroPointOffset> offsets_of(std::span<const TrainingCandidate> candi
 
 }  // namespace
 
+LightCurveFits fit_candidates(std::span<const TrainingCandidate> candidates, const SpectralTemplate& model,
+                              const PassbandCatalogue& catalogue, const Extinction& dust, const TrainingSetup& setup) {
+  std::vector<LightCurve> light_curves;
+  std::vector<Supernova> supernovae;
+  for (const TrainingCandidate& candidate : candidates) {
+    light_curves.push_back(candidate.light_curve);
+    supernovae.push_back(candidate.supernova);
+  }
+  return fit_all(light_curves, supernovae, PreparedTemplate(model), catalogue, dust, setup.fit, setup.trainer.threads);
+}
+
 CheckFits check_on_other_surveys(std::span<const TrainingCandidate> candidates, const SpectralTemplate& model,
                                  const PassbandCatalogue& catalogue, const Extinction& dust,
                                  const TrainingSetup& setup) {
   CheckFits out;
   if (candidates.empty()) return out;
-  out.as_given = fits_of(candidates, model, catalogue, dust, setup);
+  out.as_given = fit_candidates(candidates, model, catalogue, dust, setup);
   out.offsets = offsets_of(candidates, out.as_given, model, catalogue, dust, setup);
   std::map<std::pair<std::string, std::string>, double> factor;
   for (const ZeroPointOffset& offset : out.offsets) {
@@ -67,7 +67,7 @@ CheckFits check_on_other_surveys(std::span<const TrainingCandidate> candidates, 
       epoch.flux_error *= found->second;
     }
   }
-  out.with_offsets = fits_of(moved, model, catalogue, dust, setup);
+  out.with_offsets = fit_candidates(moved, model, catalogue, dust, setup);
   return out;
 }
 

@@ -5,6 +5,7 @@
 #include <cmath>
 
 #include "base/parallel.h"
+#include "training/spread_terms.h"
 
 namespace thirdrung {
 
@@ -137,9 +138,11 @@ NormalEquations eliminate_supernovae(const SpectralTemplate& model, std::span<co
     for (std::size_t k = group; k < supernovae.size(); k += group_count) {
       const LinearisedSupernova line = linearise(model, supernovae[k], unknowns[k], robust_weights[k]);
       eliminated[k] = eliminate(layout, supernovae[k], unknowns[k], line, prior, groups[group], updates);
+      add_spread_slope(layout, supernovae[k], line, eliminated[k].local_inverse, groups[group].spread);
     }
   });
   for (std::size_t group = 1; group < group_count; ++group) groups.front().add(groups[group]);
+  groups.front().gradient -= groups.front().spread;
   return std::move(groups.front());
 }
 

@@ -16,16 +16,21 @@ struct UnknownsPrior {
   double c_mean = 0, c_width = 0.15;
 };
 
-/// Gauss–Newton system H δ = g of the template's coefficients, minimising ½ Σ r^T C^−1 r.
+/// Gauss–Newton system H δ = g of the template's coefficients, minimising ½ Σ r^T C^−1 r and what the freedom of the
+/// supernovae's unknowns costs (spread_terms.h), which enters by its slope alone.
 struct NormalEquations {
   Eigen::MatrixXd hessian;   ///< Lower triangle filled.
-  Eigen::VectorXd gradient;  ///< −∂(objective)/∂coefficients: J^T C^−1 r.
+  Eigen::VectorXd gradient;  ///< −∂(objective)/∂coefficients.
+  Eigen::VectorXd spread;    ///< The part of the objective's slope that is the unknowns' freedom, counted in gradient.
 
   explicit NormalEquations(int size)
-      : hessian(Eigen::MatrixXd::Zero(size, size)), gradient(Eigen::VectorXd::Zero(size)) {}
+      : hessian(Eigen::MatrixXd::Zero(size, size)),
+        gradient(Eigen::VectorXd::Zero(size)),
+        spread(Eigen::VectorXd::Zero(size)) {}
   void add(const NormalEquations& other) {
     hessian += other.hessian;
     gradient += other.gradient;
+    spread += other.spread;
   }
 };
 

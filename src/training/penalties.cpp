@@ -209,6 +209,17 @@ double add_smoothness(const SpectralTemplate& model, const Smoothness& smoothnes
   return sum;
 }
 
+GaugeConditions gauge_conditions(const SpectralTemplate& model) {
+  const std::vector<GaugeRow> rows = gauge_rows(model);
+  const auto count = static_cast<Eigen::Index>(rows.size());
+  GaugeConditions out{Eigen::VectorXd(count), Eigen::MatrixXd(CoefficientLayout(model).size(), count)};
+  for (Eigen::Index i = 0; i < count; ++i) {
+    out.value(i) = rows[static_cast<std::size_t>(i)].value;
+    out.gradient.col(i) = rows[static_cast<std::size_t>(i)].gradient;
+  }
+  return out;
+}
+
 double half_gauge(const SpectralTemplate& model, double error) {
   double sum = 0;
   for (const GaugeRow& row : gauge_rows(model)) sum += 0.5 * row.value * row.value / (error * error);

@@ -21,7 +21,14 @@ double add_smoothness(const SpectralTemplate& model, const Smoothness& smoothnes
 /// ½ × penalty alone.
 double half_smoothness(const SpectralTemplate& model, const Smoothness& smoothness);
 
-/// Adds the six gauge conditions of the template, and a seventh that makes B peak at p = 0 whatever s, as
+/// The gauge conditions, six of the template and a seventh that makes B peak at p = 0 whatever s.
+struct GaugeConditions {
+  Eigen::VectorXd value;     ///< What each leaves; zero in the gauge.
+  Eigen::MatrixXd gradient;  ///< Coefficients × conditions.
+};
+GaugeConditions gauge_conditions(const SpectralTemplate& model);
+
+/// Adds the gauge conditions as
 /// pseudo-observations of error `error`; returns ½ × their χ².
 double add_gauge(const SpectralTemplate& model, double error, NormalEquations& into);
 double half_gauge(const SpectralTemplate& model, double error);

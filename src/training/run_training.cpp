@@ -8,6 +8,7 @@
 #include <set>
 
 #include "base/progress.h"
+#include "training/calibration_response.h"
 
 namespace thirdrung {
 
@@ -38,17 +39,11 @@ void append(LightCurveFits& into, LightCurveFits&& fits) {
   std::move(fits.set_aside.begin(), fits.set_aside.end(), std::back_inserter(into.set_aside));
 }
 
-/// Fits of some candidates with one template.
-LightCurveFits fits_of(std::span<const TrainingCandidate> candidates, std::span<const std::size_t> chosen,
-                       const SpectralTemplate& model, const PassbandCatalogue& catalogue, const Extinction& dust,
-                       const FitOptions& options, int threads) {
-  std::vector<LightCurve> light_curves;
-  std::vector<Supernova> supernovae;
-  for (const std::size_t i : chosen) {
-    light_curves.push_back(candidates[i].light_curve);
-    supernovae.push_back(candidates[i].supernova);
-  }
-  return fit_all(light_curves, supernovae, PreparedTemplate(model), catalogue, dust, options, threads);
+std::vector<TrainingCandidate> chosen_of(std::span<const TrainingCandidate> candidates,
+                                         std::span<const std::size_t> chosen) {
+  std::vector<TrainingCandidate> out;
+  for (const std::size_t i : chosen) out.push_back(candidates[i]);
+  return out;
 }
 
 void fit_out_of_fold(TrainingResult& result, std::span<const TrainingCandidate> candidates,
@@ -70,13 +65,12 @@ void fit_out_of_fold(TrainingResult& result, std::span<const TrainingCandidate> 
       never_seen.erase(held_out.back());
     }
     append(result.out_of_fold,
-           fits_of(candidates, held_out, part.state.model, catalogue, dust, setup.fit, options.threads));
+           fit_candidates(chosen_of(candidates, held_out), part.state.model, catalogue, dust, setup));
     result.fold_templates.push_back(std::move(part.state.model));
     progress.advance();
   }
   const std::vector<std::size_t> rest(never_seen.begin(), never_seen.end());
-  append(result.out_of_fold,
-         fits_of(candidates, rest, result.state.model, catalogue, dust, setup.fit, options.threads));
+  append(result.out_of_fold, fit_candidates(chosen_of(candidates, rest), result.state.model, catalogue, dust, setup));
 }
 
 }  // namespace
@@ -142,14 +136,15 @@ TrainingResult run_training(std::span<const TrainingCandidate> candidates, std::
     options.smoothness = result.cross_validation.best;
   }
   result.smoothness = options.smoothness;
+  result.folds = setup.cross_validation.folds;
   train(result.state, supernovae, options);
   result.log = result.state.log;
 
   std::vector<EliminatedSupernova> eliminated;
   const NormalEquations system = assemble(result.state, supernovae, options, eliminated);
-  TemplateUncertainty uncertainty = template_uncertainty(system, setup.covariance_modes);
+  TemplateUncertainty uncertainty = template_uncertainty(result.state.model, system, setup.covariance_modes);
   result.trained.responses = calibration_responses(result.state, supernovae, candidates, result.selection.candidate,
-                                                   catalogue, standard_star, dust, system, eliminated, options.threads);
+                                                   catalogue, standard_star, dust, options);
   result.trained.covariance_modes = std::move(uncertainty.modes);
   result.covariance = std::move(uncertainty.covariance);
   result.offsets = zero_point_offsets(result.state.model, supernovae, result.state.unknowns,

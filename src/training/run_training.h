@@ -40,9 +40,11 @@ struct CheckFits {
 /// Everything a training run yields.
 struct TrainingResult {
   TrainedTemplate trained;
-  TrainingSelection selection;  ///< Who was trained on, and who was left out and why.
-  TrainingState state;          ///< At the optimum.
-  Smoothness smoothness;        ///< As used.
+  TrainingSelection selection;                ///< Who was trained on, and who was left out and why.
+  TrainingState state;                        ///< At the optimum.
+  Smoothness smoothness;                      ///< As used.
+  int folds = 5;                              ///< Of cross-validation and out-of-fold fits.
+  std::vector<std::string> spectra_left_out;  ///< \"reason: count\".
   CrossValidationResult cross_validation;
   Eigen::MatrixXd covariance;            ///< Of all coefficients.
   std::vector<ZeroPointOffset> offsets;  ///< That the data would prefer.
@@ -60,6 +62,10 @@ struct TrainingResult {
 TrainingResult run_training(std::span<const TrainingCandidate> candidates, std::vector<TrainingSpectrum> spectra,
                             const PassbandCatalogue& catalogue, const std::optional<Spectrum>& standard_star,
                             const Extinction& dust, const TrainingSetup& setup);
+
+/// Light-curve fits of candidates with one template, by the options of the setup.
+LightCurveFits fit_candidates(std::span<const TrainingCandidate> candidates, const SpectralTemplate& model,
+                              const PassbandCatalogue& catalogue, const Extinction& dust, const TrainingSetup& setup);
 
 /// Fits supernovae of other surveys with a trained template, as given and with the zero-point offsets that they prefer.
 CheckFits check_on_other_surveys(std::span<const TrainingCandidate> candidates, const SpectralTemplate& model,

@@ -50,8 +50,8 @@ SupernovaModel evaluate_supernova(const SpectralTemplate& model, const TrainingS
         gradient->phi_phase = phase;
         gradient->gamma_phase = g_phase;
         gradient->phi = Eigen::VectorXd::Zero(band.phi_count);
-        gradient->gamma = Eigen::VectorXd::Zero(band.gamma_count);
-        gradient->colour = Eigen::VectorXd::Zero(band.colour_count);
+        gradient->gamma_share = Eigen::VectorXd::Zero(band.gamma_count);
+        gradient->colour_share = Eigen::VectorXd::Zero(band.colour_count);
       }
       double flux = 0;
       double by_q = 0;
@@ -72,10 +72,13 @@ SupernovaModel evaluate_supernova(const SpectralTemplate& model, const TrainingS
         by_c -= f * constants::ln_flux_per_mag * k;
         if (gradient) {
           spread(band.phi[j].value, f, gradient->phi.data() + phi_at);
-          spread(band.gamma[j].value, f * u, gradient->gamma.data() + gamma_at);
-          spread(band.colour[j].value, -f * constants::ln_flux_per_mag * at.c,
-                 gradient->colour.data() + band.colour[j].first - band.colour_first);
+          spread(band.gamma[j].value, f, gradient->gamma_share.data() + gamma_at);
+          spread(band.colour[j].value, f, gradient->colour_share.data() + band.colour[j].first - band.colour_first);
         }
+      }
+      if (gradient) {
+        gradient->gamma = u * gradient->gamma_share;
+        gradient->colour = -constants::ln_flux_per_mag * at.c * gradient->colour_share;
       }
       const auto row = static_cast<Eigen::Index>(e);
       out.flux(row) = flux;

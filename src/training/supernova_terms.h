@@ -21,7 +21,8 @@ struct SupernovaModel {
 /// a wavelength part.
 struct EpochGradient {
   CubicBasis::Weights phi_phase, gamma_phase;
-  Eigen::VectorXd phi, gamma, colour;  ///< Wavelength parts, over the ranges of the epoch's band.
+  Eigen::VectorXd phi, gamma, colour;         ///< Wavelength parts, over the ranges of the epoch's band.
+  Eigen::VectorXd gamma_share, colour_share;  ///< Σ flux × basis: gamma and colour without their factors s − 1 and c.
 };
 
 /// Noise model of one supernova about the template (docs/methods.md, "Fit of one supernova").

@@ -103,6 +103,21 @@ Yardstick yardstick_of(const TrainingState& state, std::span<const TrainingSuper
   return out;
 }
 
+/// Brings a template that a step has led off the bent gauge conditions back onto them, along the directions that cost
+/// least by the system of `factor`. Changes `model`, and returns its coefficients.
+template <typename Factor>
+Eigen::VectorXd back_into_gauge(SpectralTemplate& model, const Factor& factor) {
+  const CoefficientLayout layout(model);
+  Eigen::VectorXd at = layout.gather(model);
+  for (int pass = 0; pass < 2; ++pass) {
+    const GaugeConditions conditions = gauge_conditions(model);
+    const Eigen::MatrixXd along = factor.solve(conditions.gradient);
+    at -= along * Eigen::MatrixXd(conditions.gradient.transpose() * along).ldlt().solve(conditions.value);
+    layout.scatter(at, model);
+  }
+  return at;
+}
+
 /// One round of Gauss–Newton until the objective settles. Returns false if no step could be taken.
 void iterate(TrainingState& state, std::span<const TrainingSupernova> supernovae, const TrainerOptions& options) {
   const CoefficientLayout layout(state.model);
@@ -112,26 +127,33 @@ void iterate(TrainingState& state, std::span<const TrainingSupernova> supernovae
     const double before = objective(state, state.model, state.unknowns, state.spectra, supernovae, yardstick, options);
     std::vector<EliminatedSupernova> eliminated;
     const NormalEquations system = assemble(state, supernovae, options, eliminated);
+    // The gauge is orders of magnitude stiffer than anything else: damping in proportion to it would freeze whatever it
+    // touches, so it does not count there.
+    NormalEquations gauge(layout.size());
+    add_gauge(state.model, options.gauge_error, gauge);
+    const Eigen::VectorXd curvature = system.hessian.diagonal() - gauge.hessian.diagonal();
     const Eigen::VectorXd start = layout.gather(state.model);
     bool accepted = false;
     double after = before;
     for (int attempt = 0; attempt < 8 && !accepted; ++attempt) {
       Eigen::MatrixXd damped = system.hessian;
-      damped.diagonal() *= 1 + damping;
+      damped.diagonal() += damping * curvature;
       const Eigen::LLT<Eigen::Ref<Eigen::MatrixXd>> factor(damped);
       if (factor.info() != Eigen::Success) {
         damping = std::max(damping * 10, 1e-6);
         continue;
       }
-      const Eigen::VectorXd step = factor.solve(system.gradient);
+      Eigen::VectorXd step = factor.solve(system.gradient);
       SpectralTemplate trial = state.model;
       layout.scatter(start + step, trial);
+      step = back_into_gauge(trial, factor) - start;
       std::vector<SupernovaUnknowns> trial_unknowns(state.unknowns.size());
       for (std::size_t k = 0; k < trial_unknowns.size(); ++k) {
         trial_unknowns[k] = moved(state.unknowns[k], limited(eliminated[k].step(step), state.unknowns[k]));
       }
       std::vector<TrainingSpectrum> trial_spectra = state.spectra;
-      after = objective(state, trial, trial_unknowns, trial_spectra, supernovae, yardstick, options);
+      after = objective(state, trial, trial_unknowns, trial_spectra, supernovae, yardstick, options) +
+              system.spread.dot(step);
       accepted = std::isfinite(after) && after < before + 1e-9 * std::abs(before);
       if (accepted) {
         state.model = std::move(trial);
@@ -160,7 +182,11 @@ void iterate(TrainingState& state, std::span<const TrainingSupernova> supernovae
 
 Eigen::VectorXd robust_weights_of(const SpectralTemplate& model, const TrainingSupernova& sn,
                                   const SupernovaUnknowns& at, double degrees) {
-  const Eigen::VectorXd flux = evaluate_supernova(model, sn, at).flux;
+  return robust_weights_at(model, sn, at, evaluate_supernova(model, sn, at).flux, degrees);
+}
+
+Eigen::VectorXd robust_weights_at(const SpectralTemplate& model, const TrainingSupernova& sn,
+                                  const SupernovaUnknowns& at, const Eigen::VectorXd& flux, double degrees) {
   const Eigen::VectorXd ones = Eigen::VectorXd::Ones(flux.size());
   const SupernovaNoise noise = supernova_noise(model, sn, at, flux, ones);
   Eigen::VectorXd residual = observed_flux(sn) - flux;
@@ -250,7 +276,7 @@ Eigen::Matrix4d fit_supernova(const SpectralTemplate& model, const TrainingSuper
     }
     at = next;
     values = std::move(next_values);
-    if (robust_degrees > 0) robust_weight = robust_weights_of(model, sn, at, robust_degrees);
+    if (robust_degrees > 0) robust_weight = robust_weights_at(model, sn, at, values.flux, robust_degrees);
     settled = std::sqrt(std::max(0.0, move.dot(normal * move)));
     if (settled < 1e-4) break;
   }
@@ -268,13 +294,17 @@ NormalEquations assemble(TrainingState& state, std::span<const TrainingSupernova
                          const TrainerOptions& options, std::vector<EliminatedSupernova>& eliminated) {
   NormalEquations system = eliminate_supernovae(state.model, supernovae, state.unknowns, state.robust_weights,
                                                 options.prior, options.threads, eliminated);
-  if (!state.spectra.empty()) {
-    add_spectra(state.model, state.spectra, state.spectra_scatter, options.spectra_correlation_length, options.threads,
-                &system);
-  }
-  add_smoothness(state.model, options.smoothness, system);
+  add_spectra_and_smoothness(state, options, system);
   add_gauge(state.model, options.gauge_error, system);
   return system;
+}
+
+void add_spectra_and_smoothness(TrainingState& state, const TrainerOptions& options, NormalEquations& into) {
+  if (!state.spectra.empty()) {
+    add_spectra(state.model, state.spectra, state.spectra_scatter, options.spectra_correlation_length, options.threads,
+                &into);
+  }
+  add_smoothness(state.model, options.smoothness, into);
 }
 
 void train(TrainingState& state, std::span<const TrainingSupernova> supernovae, const TrainerOptions& options) {
@@ -291,11 +321,8 @@ void train(TrainingState& state, std::span<const TrainingSupernova> supernovae, 
   if (!state.spectra.empty()) {
     fit_warps(state.model, state.spectra, state.spectra_scatter, options.spectra_correlation_length, options.threads);
   }
-  // The gauge conditions bend with the coefficients: held tightly from the start they would veto every long step.
-  TrainerOptions loose = options;
-  loose.gauge_error = std::max(options.gauge_error, 2e-3);
   for (int round = 0; round < options.scatter_rounds; ++round) {
-    iterate(state, supernovae, loose);
+    iterate(state, supernovae, options);
     // Every epoch counts in full here: a scatter that left out the tails would make ordinary supernovae look
     // impossible.
     std::vector<Eigen::VectorXd> full_weights;

@@ -55,9 +55,15 @@ void train(TrainingState& state, std::span<const TrainingSupernova> supernovae, 
 NormalEquations assemble(TrainingState& state, std::span<const TrainingSupernova> supernovae,
                          const TrainerOptions& options, std::vector<EliminatedSupernova>& eliminated);
 
+/// Adds the part of spectra and of smoothing to a system.
+void add_spectra_and_smoothness(TrainingState& state, const TrainerOptions& options, NormalEquations& into);
+
 /// Robust weights (ν + 1)/(ν + x²) from residuals x standardised by the noise of their epoch, after the band's common
 /// offset.
 Eigen::VectorXd robust_weights_of(const SpectralTemplate& model, const TrainingSupernova& sn,
                                   const SupernovaUnknowns& at, double degrees);
+/// The same where the model's fluxes are known.
+Eigen::VectorXd robust_weights_at(const SpectralTemplate& model, const TrainingSupernova& sn,
+                                  const SupernovaUnknowns& at, const Eigen::VectorXd& flux, double degrees);
 
 }  // namespace thirdrung

@@ -246,6 +246,9 @@ std::string training_report_text(const TrainingResult& result, std::span<const L
   if (!result.offsets.empty()) out += "## Zero points\n\n" + offsets_text(result.offsets);
   if (!result.check.as_given.fits.empty()) out += "## Surveys not trained on\n\n" + check_text(result.check);
   out += "## Left out\n\n" + left_out_text(result.selection.left_out);
+  if (!result.spectra_left_out.empty()) {
+    out += fmt::format("\nSpectra left out: {}.\n", fmt::join(result.spectra_left_out, "; "));
+  }
   return out;
 }
 

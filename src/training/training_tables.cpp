@@ -32,7 +32,7 @@ Table training_set_table(const TrainingResult& result) {
   std::vector<std::int64_t> fold;
   std::vector<double> chi2;
   for (std::size_t k = 0; k < supernovae.size(); ++k) {
-    fold.push_back(fold_of(k, 5));
+    fold.push_back(fold_of(k, result.folds));
     chi2.push_back(chi2_per_dof(result.state.model, supernovae[k], unknowns[k]));
   }
   table.add_integers("fold", fold);

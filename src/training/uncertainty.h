@@ -1,34 +1,25 @@
 #pragma once
 
 #include <Eigen/Core>
-#include <span>
-#include <vector>
 
-#include "light/passband_catalogue.h"
-#include "template/trained_template.h"
-#include "training/selection.h"
-#include "training/trainer.h"
+#include "template/spectral_template.h"
+#include "training/normal_equations.h"
 
 namespace thirdrung {
 
 /// Covariance of the trained coefficients, the inverse of the Gauss–Newton Hessian with every supernova's unknowns
-/// eliminated, and the leading modes of it.
+/// eliminated, and the leading modes of what it says beyond conventions.
+///
+/// Where c = 0 and s = 1 stand is a convention: c = 0 is the colour B − V of the fiducial supernova at maximum, s = 1
+/// its decline in B over 15 d. The training set fixes both by the means of its priors, and that freedom moves every
+/// standardised magnitude alike, calibrators included, as a change of name would. The modes are conditional on these
+/// two numbers of the template in hand; the covariance is not.
 struct TemplateUncertainty {
   Eigen::MatrixXd covariance;  ///< All coefficients.
-  Eigen::MatrixXd modes;       ///< covariance ≈ modes modes^T.
+  Eigen::MatrixXd modes;       ///< Covariance given the fiducial B − V and decline ≈ modes modes^T.
 };
 
 /// @param mode_count how many modes are kept: those of the correlation matrix with the largest eigenvalues.
-TemplateUncertainty template_uncertainty(const NormalEquations& system, int mode_count);
-
-/// Response of the coefficients to the calibration of every passband of the training set: −H⁻¹ ∂g/∂calibration, the
-/// implicit-function theorem at the optimum (Gauss–Newton Hessian, noise and robust weights held).
-///
-/// @param standard_star needed where the catalogue's systems refer to it.
-std::vector<CalibrationResponse> calibration_responses(
-    const TrainingState& state, std::span<const TrainingSupernova> supernovae,
-    std::span<const TrainingCandidate> candidates, std::span<const std::size_t> candidate_of,
-    const PassbandCatalogue& catalogue, const std::optional<Spectrum>& standard_star, const Extinction& dust,
-    const NormalEquations& system, std::span<const EliminatedSupernova> eliminated, int threads);
+TemplateUncertainty template_uncertainty(const SpectralTemplate& model, const NormalEquations& system, int mode_count);
 
 }  // namespace thirdrung

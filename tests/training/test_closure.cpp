@@ -101,7 +101,7 @@ double band_pulls(const Closure& closure, double time_factor) {
 }  // namespace
 
 TEST_CASE("closure: template and supernovae come back within their errors", "[closure]") {
-  const Closure closure = train_again(0.3);
+  const Closure closure = train_again(0.1);
   const TrainingResult& result = closure.result;
   CHECK(result.selection.supernovae.size() > 110);
   CHECK(gauge_errors(result.state.model).largest() < 1e-4);
@@ -110,9 +110,9 @@ TEST_CASE("closure: template and supernovae come back within their errors", "[cl
   CHECK(std::abs(c.mean_pull()) < 0.2);
   CHECK(c.slope() == Approx(1).margin(0.03));
   const Comparison s = compare(closure, &SupernovaUnknowns::s, &Truth::s, 2);
-  // s up to its zero and scale (docs/template.md, "Gauge"), which the priors set.
-  CHECK(s.slope() > 0.85);
-  CHECK(s.slope() < 1.05);
+  // s up to its zero, a convention of the training (docs/template.md, "Gauge"), which comes out 0.03 off the truth's.
+  // The scale of s to 5%: a light curve of five days' cadence knows it half as well as that of c.
+  CHECK(s.slope() == Approx(1).margin(0.05));
   CHECK(s.width_about_line() > 0.7);
   CHECK(s.width_about_line() < 1.4);
   // Scatter that was put in: 2% and 2%. Sampling errors are 3% (ε) and 7% (κ).
@@ -122,17 +122,13 @@ TEST_CASE("closure: template and supernovae come back within their errors", "[cl
   CHECK(band_pulls(closure, s.trained.mean() / s.truth.mean()) < 1.1);
 }
 
-// What one would want besides, and what the training does not give: see docs/template.md, "Where it may be trusted".
-// Joint maximisation over supernovae and template draws the scale of s (free in the gauge) and, with a prior as narrow
-// as the population, that of c towards the prior.
-TEST_CASE("closure: zero and scale of s and c are those put in", "[closure][!mayfail]") {
-  const Closure closure = train_again(0.1);
-  const Comparison s = compare(closure, &SupernovaUnknowns::s, &Truth::s, 2);
+// The marginal likelihood needs to know how wide the population is (docs/template.md, "Where it may be trusted"): what
+// a prior three times as wide does to the scales. Bounds: a tenth, and that it does something.
+TEST_CASE("closure: a prior three times as wide as the population stretches c by less than a tenth", "[closure]") {
+  const Closure closure = train_again(0.3);
   const Comparison c = compare(closure, &SupernovaUnknowns::c, &Truth::c, 3);
-  INFO("slope of s " << s.slope() << ", mean pull " << s.mean_pull() << "; slope of c " << c.slope());
-  CHECK(std::abs(s.mean_pull()) < 0.2);
-  CHECK(s.slope() == Approx(1).margin(0.03));
-  CHECK(c.slope() == Approx(1).margin(0.03));
+  CHECK(c.slope() > 1.0);
+  CHECK(c.slope() < 1.1);
 }
 
 }  // namespace thirdrung::testing

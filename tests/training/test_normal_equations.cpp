@@ -1,10 +1,12 @@
 #include <Eigen/Dense>
 #include <catch2/catch.hpp>
+#include <cmath>
 #include <random>
 
 #include "training/normal_equations.h"
 #include "training/penalties.h"
 #include "training/small_training.h"
+#include "training/spread_terms.h"
 
 // Every check here is against finite differences or against the same algebra written out in full matrices; the
 // tolerances are those of double precision and of the differences' step.
@@ -159,6 +161,9 @@ TEST_CASE("eliminating the supernovae's unknowns gives the step of the full syst
     objective_slope += (half(1e-5) - half(-1e-5)) / 2e-5;
   }
   CHECK(gradient.head(n).dot(direction) == Approx(-objective_slope).epsilon(1e-6));
+  // What the freedom of the unknowns costs has a gradient, and no curvature in the system (its own test is below).
+  gradient.head(n) -= reduced.spread;
+  CHECK(reduced.spread.norm() > 0);
 
   // Smoothing makes both systems definite; the step must be the same.
   NormalEquations smooth(layout.size());
@@ -176,6 +181,39 @@ TEST_CASE("eliminating the supernovae's unknowns gives the step of the full syst
   for (Eigen::Index k = 0; k < count; ++k) {
     const Eigen::Vector4d local = eliminated[static_cast<std::size_t>(k)].step(step);
     CHECK((local - expected.segment(n + 4 * k, 4)).norm() < 1e-6 * expected.segment(n + 4 * k, 4).norm());
+  }
+}
+
+// Along a change of Gamma and K with everything else held, shares of the wavelengths in a band included, L changes by
+// the means of dGamma and dK over each band.
+TEST_CASE("the cost of the unknowns' freedom has the slope of half ln det of their precision") {
+  const TinyProblem tiny;
+  const CoefficientLayout layout(tiny.model);
+  for (std::size_t k = 0; k < tiny.set.supernovae.size(); ++k) {
+    const TrainingSupernova& sn = tiny.set.supernovae[k];
+    // At s = 1 and c = 0 fluxes do not depend on Gamma and K, so that nothing needs to be held by hand.
+    SupernovaUnknowns at = tiny.set.unknowns[k];
+    at.s = 1;
+    at.c = 0;
+    const LinearisedSupernova line = linearise(tiny.model, sn, at, tiny.set.weights[k]);
+    const Eigen::LLT<Eigen::MatrixXd> noise(dense_covariance(sn, line.noise, line.model.flux));
+    const auto precision = [&](const Locals& by_unknowns) {
+      Eigen::Matrix4d a = by_unknowns.transpose() * noise.solve(by_unknowns);
+      a(2, 2) += 1 / (tiny.prior.s_width * tiny.prior.s_width);
+      a(3, 3) += 1 / (tiny.prior.c_width * tiny.prior.c_width);
+      return a;
+    };
+    Eigen::VectorXd slope = Eigen::VectorXd::Zero(layout.size());
+    add_spread_slope(layout, sn, line, precision(line.model.by_unknowns).inverse(), slope);
+    CHECK(slope.head(layout.gamma_start()).norm() == 0);
+    Eigen::VectorXd direction = random_vector(layout.size(), 3);
+    direction.head(layout.gamma_start()).setZero();
+    const auto half_log_determinant = [&](double step) {
+      const SpectralTemplate model = moved_along(tiny.model, direction, step);
+      return 0.5 * std::log(precision(evaluate_supernova(model, sn, at).by_unknowns).determinant());
+    };
+    const double expected = (half_log_determinant(1e-4) - half_log_determinant(-1e-4)) / 2e-4;
+    CHECK(slope.dot(direction) == Approx(expected).epsilon(1e-5));
   }
 }
 

@@ -1,0 +1,38 @@
+#pragma once
+
+#include <optional>
+#include <span>
+#include <vector>
+
+#include "light/passband_catalogue.h"
+#include "template/trained_template.h"
+#include "training/selection.h"
+#include "training/trainer.h"
+
+namespace thirdrung {
+
+/// How the responses are found.
+struct ResponseOptions {
+  double zero_point_step = 0.01;  ///< By which a zero point is moved [mag].
+  double wavelength_step = 5;     ///< By which a passband is moved [angstrom].
+  int corrections = 2;            ///< Chord steps after the first.
+};
+
+/// Response of the coefficients to the calibration of every passband of the training set, the implicit-function theorem
+/// at the optimum: d theta = -(dg/dtheta)^-1 (dg/dcalibration) dcalibration.
+///
+/// The first step is that of the Gauss-Newton Hessian H, noise and robust weights held. They do follow, though, and so
+/// does the curvature that H leaves out; g is therefore taken anew at the template reached, with every supernova's
+/// unknowns, noise and robust weights settled there, and H^-1 g added: chord steps (Kelley 1995, Iterative Methods for
+/// Linear and Nonlinear Equations, sect. 5.4.1). Spectra, smoothing and gauge enter by their Hessian. How close the
+/// answer comes to training again: docs/template.md.
+///
+/// @param candidate_of the candidate behind each supernova. @param standard_star needed where the catalogue's systems
+/// refer to it.
+std::vector<CalibrationResponse> calibration_responses(
+    const TrainingState& state, std::span<const TrainingSupernova> supernovae,
+    std::span<const TrainingCandidate> candidates, std::span<const std::size_t> candidate_of,
+    const PassbandCatalogue& catalogue, const std::optional<Spectrum>& standard_star, const Extinction& dust,
+    const TrainerOptions& trainer, const ResponseOptions& options = {});
+
+}  // namespace thirdrung
