@@ -2,6 +2,7 @@
 
 #include <fmt/format.h>
 
+#include <Eigen/Cholesky>
 #include <algorithm>
 #include <cmath>
 
@@ -125,6 +126,13 @@ void draw_curves(const Problem& problem, const Solution& solution, LightCurveFit
   }
 }
 
+/// Whether a covariance can be used as one, told from its correlations so that units do not count.
+bool is_definite(const Eigen::Matrix4d& covariance) {
+  const Eigen::Vector4d scale = covariance.diagonal().cwiseSqrt().cwiseInverse();
+  const Eigen::Matrix4d correlation = scale.asDiagonal() * covariance * scale.asDiagonal();
+  return correlation.allFinite() && Eigen::LLT<Eigen::Matrix4d>(correlation).info() == Eigen::Success;
+}
+
 void remark_on(const Problem& problem, const Solution& solution, bool reselected, LightCurveFit& fit) {
   const FitOptions& options = problem.options;
   const auto add_if = [&](bool holds, Remark remark) {
@@ -213,6 +221,10 @@ LightCurveFit fit_light_curve(const LightCurve& light_curve, const Supernova& su
   const std::vector<Candidate> solutions = candidates(problem, starts);
   if (solutions.empty()) {
     fit.remarks = {starts.empty() ? Remark::no_positive_flux : Remark::no_usable_epoch};
+    return fit;
+  }
+  if (!is_definite(solutions.front().solution.covariance)) {
+    fit.remarks = {Remark::undetermined};
     return fit;
   }
   fill(problem, light_curve, prepared, solutions, fit);

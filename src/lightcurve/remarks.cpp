@@ -10,6 +10,8 @@ std::string text_of(Remark remark) {
       return "no epoch within the template's phases and wavelengths";
     case Remark::no_positive_flux:
       return "no positive flux that looks like a supernova";
+    case Remark::undetermined:
+      return "too few epochs to tell t_0 and m_B";
     case Remark::not_converged:
       return "not converged";
     case Remark::too_few_epochs:

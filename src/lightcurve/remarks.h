@@ -10,6 +10,7 @@ namespace thirdrung {
 enum class Remark {
   no_usable_epoch,     ///< No epoch in a covered band within the template's phases.
   no_positive_flux,    ///< Nowhere in the scan did a positive amplitude fit.
+  undetermined,        ///< So few epochs that t_0 or m_B could be anything; there are no numbers then.
   not_converged,       ///< The parameters still moved after the last iteration.
   too_few_epochs,      ///< Fewer epochs than parameters plus one: s and c were held by wide priors.
   one_band,            ///< Only one band: c was held by a wide prior.

@@ -200,6 +200,18 @@ TEST_CASE("flux that is nowhere positive gives no fit but a reason") {
   CHECK_FALSE(fit.trusted());
 }
 
+TEST_CASE("a single epoch gives no fit but a reason") {
+  const Lab lab;
+  const Truth truth;
+  LightCurve light_curve = observe(truth, lab.model, lab.catalogue, {"blue"}, -12, 44, 4, 0.01);
+  light_curve.epochs.resize(1);
+  const auto fit = lab.fit(truth, light_curve);
+  CHECK(has(fit, Remark::undetermined));
+  CHECK(fit.epochs_used == 0);
+  CHECK_FALSE(std::isfinite(fit.m_b));
+  CHECK_FALSE(fit.trusted());
+}
+
 TEST_CASE("a supernova without redshift or reddening is refused, and set aside among others") {
   const Lab lab;
   const Truth truth;
