@@ -158,6 +158,7 @@ std::vector<CalibrationResponse> calibration_responses(
     return Eigen::VectorXd(reached / step);
   };
   std::vector<CalibrationResponse> out;
+  out.reserve(passbands.size());
   for (const std::string& passband : passbands) {
     out.push_back({passband, response(passband, Calibration::zero_point, options.zero_point_step),
                    response(passband, Calibration::wavelength, options.wavelength_step)});
