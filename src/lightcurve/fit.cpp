@@ -126,13 +126,6 @@ void draw_curves(const Problem& problem, const Solution& solution, LightCurveFit
   }
 }
 
-/// Whether a covariance can be used as one, told from its correlations so that units do not count.
-bool is_definite(const Eigen::Matrix4d& covariance) {
-  const Eigen::Vector4d scale = covariance.diagonal().cwiseSqrt().cwiseInverse();
-  const Eigen::Matrix4d correlation = scale.asDiagonal() * covariance * scale.asDiagonal();
-  return correlation.allFinite() && Eigen::LLT<Eigen::Matrix4d>(correlation).info() == Eigen::Success;
-}
-
 void remark_on(const Problem& problem, const Solution& solution, bool reselected, LightCurveFit& fit) {
   const FitOptions& options = problem.options;
   const auto add_if = [&](bool holds, Remark remark) {
@@ -189,6 +182,12 @@ void fill(const Problem& problem, const LightCurve& light_curve, const PreparedT
 }
 
 }  // namespace
+
+bool is_definite(const Eigen::Matrix4d& covariance) {
+  const Eigen::Vector4d scale = covariance.diagonal().cwiseSqrt().cwiseInverse();
+  const Eigen::Matrix4d correlation = scale.asDiagonal() * covariance * scale.asDiagonal();
+  return correlation.allFinite() && Eigen::LLT<Eigen::Matrix4d>(correlation).info() == Eigen::Success;
+}
 
 bool LightCurveFit::trusted() const {
   return std::none_of(remarks.begin(), remarks.end(), voids_trust);

@@ -120,6 +120,10 @@ struct LightCurveFit {
   int mistrusted_epochs() const;
 };
 
+/// Whether a covariance of (t_0, m_B, s, c) is finite and positive definite, told from its correlations so that units
+/// do not count.
+bool is_definite(const Eigen::Matrix4d& covariance);
+
 /// Fits one supernova: minimises r^T C^−1 r over (t_0, m_B, s, c), with
 ///
 ///   C = diag(σ² + (ε f)²) + Σ_bands κ_b² f_b f_b^T,

@@ -1,4 +1,3 @@
-#include <Eigen/Cholesky>
 #include <array>
 #include <cmath>
 #include <set>
@@ -56,9 +55,7 @@ void fill_covariances(const Table& table, std::vector<FittedSupernova>& out) {
   for (const FittedSupernova& one : out) {
     const Eigen::Matrix4d& covariance = one.fit.covariance;
     if (!std::isfinite(one.fit.m_b) || !covariance.allFinite()) continue;
-    const Eigen::Vector4d scale = covariance.diagonal().cwiseSqrt().cwiseInverse();
-    const Eigen::Matrix4d correlation = scale.asDiagonal() * covariance * scale.asDiagonal();
-    if (!correlation.allFinite() || Eigen::LLT<Eigen::Matrix4d>(correlation).info() != Eigen::Success) {
+    if (!is_definite(covariance)) {
       throw InputError(one.place, "the covariance of " + one.fit.supernova + " is not positive definite",
                        "fit the light curve again");
     }
