@@ -5,6 +5,7 @@
 #include <algorithm>
 #include <cmath>
 
+#include "report/bar_chart.h"
 #include "report/chart_spec.h"
 #include "report/digits.h"
 #include "report/ladder_rows.h"
@@ -14,31 +15,6 @@ namespace thirdrung {
 namespace {
 
 using nlohmann::json;
-
-json scales_of(const json& order, const json& labels, const Range& range) {
-  return {{{"name", "x"},
-           {"type", "linear"},
-           {"zero", false},
-           {"domain", {range.low, range.high}},
-           {"range", {{"signal", "[0, max(60, width - room)]"}}}},
-          {{"name", "y"}, {"type", "point"}, {"range", "height"}, {"domain", order}, {"padding", 0.6}},
-          {{"name", "label"}, {"type", "ordinal"}, {"domain", order}, {"range", labels}}};
-}
-
-json axes_of(const char* title) {
-  return {{{"scale", "x"},
-           {"orient", "bottom"},
-           {"title", title},
-           {"grid", true},
-           {"tickCount", {{"signal", "ceil(max(60, width - room) / 90)"}}}},
-          {{"scale", "y"},
-           {"orient", "left"},
-           {"ticks", false},
-           {"domain", false},
-           {"labelLimit", 230},
-           {"labelPadding", 8},
-           {"encode", {{"labels", {{"update", {{"text", {{"signal", "scale('label', datum.value)"}}}}}}}}}}};
-}
 
 json number_mark() {
   return {{"type", "text"},
@@ -106,9 +82,22 @@ Chart calibrator_chart(const ChartInput& input) {
   }
   json spec = bare_spec(input);
   add_rows(spec, "rows", rows);
+  const Range range = range_of(values, errors);
   spec["signals"].push_back({{"name", "room"}, {"update", "width < 320 ? 0 : 120"}});
-  for (const json& scale : scales_of(order, labels, range_of(values, errors))) spec["scales"].push_back(scale);
-  spec["axes"] = axes_of("M_B (mag)");
+  spec["scales"].push_back({{"name", "x"},
+                            {"type", "linear"},
+                            {"zero", false},
+                            {"domain", {range.low, range.high}},
+                            {"range", {{"signal", "[0, max(60, width - room)]"}}}});
+  spec["scales"].push_back(
+      {{"name", "y"}, {"type", "point"}, {"range", "height"}, {"domain", order}, {"padding", 0.6}});
+  spec["scales"].push_back({{"name", "label"}, {"type", "ordinal"}, {"domain", order}, {"range", labels}});
+  spec["axes"] = {{{"scale", "x"},
+                   {"orient", "bottom"},
+                   {"title", "M_B (mag)"},
+                   {"grid", true},
+                   {"tickCount", {{"signal", "ceil(max(60, width - room) / 90)"}}}},
+                  row_label_axis()};
   for (const json& mark : answer_marks(ladder.m_b)) spec["marks"].push_back(mark);
   const json y = {{"scale", "y"}, {"field", "k"}};
   spec["marks"].push_back({{"type", "rule"},
@@ -150,49 +139,20 @@ Chart calibrator_chart(const ChartInput& input) {
 }
 
 Chart share_chart(const ChartInput& input) {
-  const LadderRows ladder = ladder_rows(input.run);
-  json rows = json::array(), order = json::array(), labels = json::array(), csv = json::array();
-  std::vector<double> values{0.0};
-  for (const auto& [name, share] : ladder.shares) {
-    const std::size_t k = order.size();
-    order.push_back(k);
-    labels.push_back(name);
-    values.push_back(100.0 * share);
+  std::vector<Bar> bars;
+  json csv = json::array();
+  for (const auto& [name, share] : ladder_rows(input.run).shares) {
+    const std::string percent = fixed(100.0 * share, 1) + " %";
     csv.push_back({name, share});
-    rows.push_back({{"k", k},
-                    {"x", rounded(100.0 * share, 4)},
-                    {"text", fixed(100.0 * share, 1) + " %"},
-                    {"tip", fmt::format("{}\n{} % of the variance of log H0", name, fixed(100.0 * share, 1))}});
+    bars.push_back({name, percent, fmt::format("{}\n{} of the variance of log H0", name, percent), 100.0 * share});
   }
-  json spec = bare_spec(input);
-  add_rows(spec, "rows", rows);
-  spec["signals"].push_back({{"name", "room"}, {"value", 60}});
-  for (const json& scale : scales_of(order, labels, range_of(values))) spec["scales"].push_back(scale);
-  spec["axes"] = axes_of("percent of the variance");
-  spec["marks"].push_back({{"type", "rule"},
-                           {"interactive", false},
-                           {"encode",
-                            {{"update",
-                              {{"x", {{"scale", "x"}, {"value", 0}}},
-                               {"y", {{"value", 0}}},
-                               {"y2", {{"signal", "height"}}},
-                               {"stroke", {{"value", "@ink"}}}}}}}});
-  spec["marks"].push_back({{"type", "rule"},
-                           {"from", {{"data", "rows"}}},
-                           {"encode",
-                            {{"update",
-                              {{"x", {{"scale", "x"}, {"value", 0}}},
-                               {"x2", {{"scale", "x"}, {"field", "x"}}},
-                               {"y", {{"scale", "y"}, {"field", "k"}}},
-                               {"stroke", {{"value", "@bar"}}},
-                               {"strokeWidth", {{"value", 14}}}}}}}});
-  spec["marks"].push_back(number_mark());
+  const int height = 90 + 30 * static_cast<int>(bars.size());
   return {"h0-shares",
           "Error of H0",
           "Where the variance of log H0 comes from; the four add up to 100 %.",
           "third",
-          90 + 30 * static_cast<int>(order.size()),
-          spec,
+          height,
+          bar_spec(input, std::move(bars), "percent of the variance", 60),
           {{"header", {"source", "share"}}, {"rows", csv}},
           ""};
 }
