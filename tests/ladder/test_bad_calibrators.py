@@ -11,7 +11,7 @@ import numpy as np
 from astropy.io import fits
 from astropy.table import Table
 
-from pipeline.small_run import contents, copy_of, make_survey, run, write_run_file
+from pipeline.small_run import check_refused, contents, copy_of, make_survey, run, write_run_file
 
 CALIBRATORS = "\n[calibrators]\nsupernovae = 6\nshared_hosts = 1\n"
 JOIN = '[join]\ncalibrators = "data/calibrators.ecsv"\n'
@@ -40,16 +40,7 @@ class BadCalibrators(unittest.TestCase):
     def refused(self, more, *words, code=3):
         write_run_file(self.folder, more)
         for command in ("check", "run"):
-            done = run(command, path(self.folder, "run.toml"))
-            self.assertEqual(done.returncode, code, done.stderr + done.stdout)
-            lines = done.stderr.strip().split("\n")
-            self.assertEqual(len(lines), 1, done.stderr)
-            for word in words:
-                self.assertIn(word, lines[0])
-            self.assertEqual(done.stdout, "")
-            results = path(self.folder, "results")
-            if os.path.isdir(results):
-                self.assertEqual([name for name in contents(results) if not name.startswith(".")], [])
+            check_refused(self, self.folder, code, words, command)
 
     def change(self, column, row, value):
         rows = Table.read(self.table)

@@ -13,7 +13,7 @@ import numpy as np
 from astropy.io import fits
 from astropy.table import Table
 
-from pipeline.small_run import RUN, contents, copy_of, make_survey, run, write_run_file
+from pipeline.small_run import RUN, contents, copy_of, make_survey, move_zero_point, run, write_run_file
 
 CALIBRATORS = """
 [calibrators]
@@ -243,16 +243,7 @@ class LadderBlock(unittest.TestCase):
         np.testing.assert_array_equal(shift[self.kind == "host"], 0)
 
     def test_zero_point_shift(self):
-        def move(folder):
-            catalogue = path(folder, "data", "passbands", "catalogue.toml")
-            with open(catalogue, encoding="utf-8") as text:
-                entries = text.read().split("[[passband]]")
-            for i, entry in enumerate(entries):
-                if '"lark-g"' in entry:
-                    entries[i] = entry.rstrip("\n") + "\nab_offset = 0.005\n\n"
-            with open(catalogue, "w", encoding="utf-8") as out:
-                out.write("[[passband]]".join(entries))
-        self.check_against_rerun("zero point lark-g", move)
+        self.check_against_rerun("zero point lark-g", lambda folder: move_zero_point(folder, "lark-g", 0.005))
 
     def test_reddening_shift(self):
         def move(folder):

@@ -99,3 +99,31 @@ def contents(folder):
             with open(path, "rb") as content:
                 found[os.path.relpath(path, folder)] = hashlib.sha256(content.read()).hexdigest()
     return found
+
+
+def check_refused(test, folder, code, words, command="run"):
+    """The command fails with the code and one sentence with all the words, and leaves no result; gives the sentence."""
+    done = run(command, os.path.join(folder, "run.toml"))
+    test.assertEqual(done.returncode, code, done.stderr + done.stdout)
+    lines = done.stderr.strip().split("\n")
+    test.assertEqual(len(lines), 1, done.stderr)
+    for word in words:
+        test.assertIn(word, lines[0])
+    test.assertEqual(done.stdout, "")
+    results = os.path.join(folder, "results")
+    if os.path.isdir(results):
+        test.assertEqual([name for name in contents(results) if not name.startswith(".")], [])
+    return lines[0]
+
+
+def move_zero_point(folder, passband, magnitudes):
+    """Gives a passband of the survey's catalogue that offset, in place of what it may have."""
+    catalogue = os.path.join(folder, "data", "passbands", "catalogue.toml")
+    with open(catalogue, encoding="utf-8") as text:
+        entries = text.read().split("[[passband]]")
+    for i, entry in enumerate(entries):
+        if '"%s"' % passband in entry:
+            kept = [line for line in entry.split("\n") if not line.startswith("ab_offset")]
+            entries[i] = "\n".join(kept).rstrip("\n") + "\nab_offset = %g\n\n" % magnitudes
+    with open(catalogue, "w", encoding="utf-8") as out:
+        out.write("[[passband]]".join(entries))

@@ -13,7 +13,7 @@ import unittest
 import numpy as np
 from astropy.io import fits
 
-from pipeline.small_run import RUN, contents, copy_of, make_survey, run, write_run_file
+from pipeline.small_run import RUN, check_refused, contents, copy_of, make_survey, run, write_run_file
 
 SURVEY = None
 
@@ -62,17 +62,7 @@ class BadInput(unittest.TestCase):
 
     def refused(self, code, *words, command="run"):
         """The command fails with the code and one sentence with all the words, and leaves no result."""
-        done = run(command, path(self.folder, "run.toml"))
-        self.assertEqual(done.returncode, code, done.stderr + done.stdout)
-        lines = done.stderr.strip().split("\n")
-        self.assertEqual(len(lines), 1, done.stderr)
-        for word in words:
-            self.assertIn(word, lines[0])
-        self.assertEqual(done.stdout, "")
-        results = path(self.folder, "results")
-        if os.path.isdir(results):
-            self.assertEqual([name for name in contents(results) if not name.startswith(".")], [])
-        return lines[0]
+        return check_refused(self, self.folder, code, words, command)
 
     def set_aside(self, supernova, *words):
         """The run goes on without that one supernova, and says why."""

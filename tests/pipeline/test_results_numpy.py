@@ -17,7 +17,7 @@ import numpy as np
 from astropy.io import fits
 from astropy.table import Table
 
-from pipeline.small_run import copy_of, make_survey, run, write_run_file
+from pipeline.small_run import copy_of, make_survey, move_zero_point, run, write_run_file
 
 MORE = """
 [standardisation]
@@ -158,17 +158,7 @@ class Results(unittest.TestCase):
         self.assertGreater(np.abs(again).max(), 2e-4)
 
     def test_zero_point_shift(self):
-        def move(folder):
-            catalogue = path(folder, "data", "passbands", "catalogue.toml")
-            with open(catalogue, encoding="utf-8") as text:
-                entries = text.read().split("[[passband]]")
-            for i, entry in enumerate(entries):
-                if '"lark-g"' in entry:
-                    kept = [line for line in entry.split("\n") if not line.startswith("ab_offset")]
-                    entries[i] = "\n".join(kept).rstrip("\n") + "\nab_offset = 0.005\n\n"
-            with open(catalogue, "w", encoding="utf-8") as out:
-                out.write("[[passband]]".join(entries))
-        self.check_against_rerun("zero point lark-g", move)
+        self.check_against_rerun("zero point lark-g", lambda folder: move_zero_point(folder, "lark-g", 0.005))
 
     def test_redshift_shift(self):
         self.check_against_rerun("redshift offset", lambda folder: change_column(folder, "z_helio", lambda z: z + 4e-5))
