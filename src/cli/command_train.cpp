@@ -25,6 +25,8 @@ void print_training(const TrainArguments& arguments) {
              result.selection.supernovae.size(), result.state.spectra.size(), result.selection.left_out.size());
   fmt::print("  fiducial         B-V at maximum {:+.3f} mag, dm15(B) {:.3f} mag\n",
              model.b_magnitude(0) - model.v_magnitude(0), model.dm15_b(1));
+  fmt::print("  population       s {:.3f} ± {:.3f}, c {:+.3f} ± {:.3f} mag\n", result.population.s.mean,
+             result.population.s.width, result.population.c.mean, result.population.c.width);
   fmt::print("  gauge            largest error {:.1e}\n", gauge_errors(model).largest());
   fmt::print("  file             {}\n  tables           {}\n", arguments.output.template_file.string(),
              arguments.output.folder.string());

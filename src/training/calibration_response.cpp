@@ -15,18 +15,13 @@ namespace thirdrung {
 
 namespace {
 
-/// Change of the flux residuals of one band with its calibration, per magnitude and per angstrom.
-struct ResidualSlopes {
-  Eigen::VectorXd zero_point, wavelength;
-};
-
-ResidualSlopes residual_slopes(const TrainingState& state, std::size_t k, const TrainingSupernova& sn,
-                               const TrainingBand& band, const Supernova& supernova, const PassbandCatalogue& catalogue,
-                               const std::optional<Spectrum>& standard_star, const Extinction& dust,
-                               const SpectralTemplate& bases) {
+/// Change of the flux residuals of one band with its wavelength scale [uJy per angstrom], one an epoch of the
+/// supernova.
+Eigen::VectorXd wavelength_slope(const TrainingState& state, std::size_t k, const TrainingSupernova& sn,
+                                 const TrainingBand& band, const Supernova& supernova,
+                                 const PassbandCatalogue& catalogue, const std::optional<Spectrum>& standard_star,
+                                 const Extinction& dust) {
   constexpr double shift = 5.0;  // angstrom
-  const auto n = static_cast<Eigen::Index>(sn.epochs.size());
-  ResidualSlopes out{Eigen::VectorXd::Zero(n), Eigen::VectorXd::Zero(n)};
   const CalibratedPassband& calibrated = catalogue.at(band.passband);
   const CalibratedPassband moved = with_wavelength_shift(calibrated, shift, standard_star);
   // Tabulated magnitudes stay as they are: the flux they stand for follows the system's zero in the moved passband.
@@ -34,19 +29,19 @@ ResidualSlopes residual_slopes(const TrainingState& state, std::size_t k, const 
   TrainingSupernova shifted;
   shifted.z_helio = sn.z_helio;
   const double ebv = std::isfinite(supernova.mw_ebv) ? supernova.mw_ebv : 0.0;
-  TrainingBand copy = band_on_bases(band.passband, band_weights(moved.passband, sn.z_helio, dust, ebv, 10.0), bases);
+  TrainingBand copy =
+      band_on_bases(band.passband, band_weights(moved.passband, sn.z_helio, dust, ebv, 10.0), state.model);
   copy.begin = 0;
   copy.end = band.end - band.begin;
   shifted.bands.push_back(std::move(copy));
   for (std::size_t e = band.begin; e < band.end; ++e) shifted.epochs.push_back(sn.epochs[e]);
   const Eigen::VectorXd model = evaluate_supernova(state.model, sn, state.unknowns[k]).flux;
   const Eigen::VectorXd model_moved = evaluate_supernova(state.model, shifted, state.unknowns[k]).flux;
+  Eigen::VectorXd out = Eigen::VectorXd::Zero(static_cast<Eigen::Index>(sn.epochs.size()));
   for (std::size_t e = band.begin; e < band.end; ++e) {
     const auto row = static_cast<Eigen::Index>(e);
-    const double flux = sn.epochs[e].flux;
-    out.zero_point(row) = -constants::ln_flux_per_mag * flux;
-    out.wavelength(row) =
-        (flux * (data_factor - 1) - (model_moved(static_cast<Eigen::Index>(e - band.begin)) - model(row))) / shift;
+    const double of_model = model_moved(static_cast<Eigen::Index>(e - band.begin)) - model(row);
+    out(row) = (sn.epochs[e].flux * (data_factor - 1) - of_model) / shift;
   }
   return out;
 }
@@ -95,6 +90,7 @@ class SettledGradient {
 
 enum class Calibration { zero_point, wavelength };
 
+/// The training set with the calibration of one passband moved by `step`.
 std::vector<TrainingSupernova> moved_data(const TrainingState& state, std::span<const TrainingSupernova> supernovae,
                                           std::span<const TrainingCandidate> candidates,
                                           std::span<const std::size_t> candidate_of, const PassbandCatalogue& catalogue,
@@ -105,13 +101,18 @@ std::vector<TrainingSupernova> moved_data(const TrainingState& state, std::span<
     TrainingSupernova& sn = out[k];
     for (const TrainingBand& band : sn.bands) {
       if (band.passband != passband) continue;
-      const ResidualSlopes slopes =
-          residual_slopes(state, k, supernovae[k], band, candidates[candidate_of[k]].supernova, catalogue,
-                          standard_star, dust, state.model);
-      const Eigen::VectorXd& slope = what == Calibration::zero_point ? slopes.zero_point : slopes.wavelength;
+      if (what == Calibration::zero_point) {
+        const double factor = 1 - constants::ln_flux_per_mag * step;
+        for (std::size_t e = band.begin; e < band.end; ++e) {
+          sn.epochs[e].flux *= factor;
+          sn.epochs[e].flux_error *= factor;
+        }
+        continue;
+      }
+      const Eigen::VectorXd slope = wavelength_slope(
+          state, k, supernovae[k], band, candidates[candidate_of[k]].supernova, catalogue, standard_star, dust);
       for (std::size_t e = band.begin; e < band.end; ++e) {
         sn.epochs[e].flux += step * slope(static_cast<Eigen::Index>(e));
-        if (what == Calibration::zero_point) sn.epochs[e].flux_error *= 1 - constants::ln_flux_per_mag * step;
       }
     }
   });
@@ -124,7 +125,7 @@ std::vector<CalibrationResponse> calibration_responses(
     const TrainingState& state, std::span<const TrainingSupernova> supernovae,
     std::span<const TrainingCandidate> candidates, std::span<const std::size_t> candidate_of,
     const PassbandCatalogue& catalogue, const std::optional<Spectrum>& standard_star, const Extinction& dust,
-    const TrainerOptions& trainer, const ResponseOptions& options) {
+    const NormalEquations& system, const TrainerOptions& trainer, const ResponseOptions& options) {
   std::set<std::string> passbands;
   for (const TrainingSupernova& sn : supernovae) {
     for (const TrainingBand& band : sn.bands) passbands.insert(band.passband);
@@ -132,8 +133,6 @@ std::vector<CalibrationResponse> calibration_responses(
   const CoefficientLayout layout(state.model);
   const Eigen::VectorXd start = layout.gather(state.model);
   TrainingState held = state;
-  std::vector<EliminatedSupernova> eliminated;
-  const NormalEquations system = assemble(held, supernovae, trainer, eliminated);
   const Eigen::LLT<Eigen::MatrixXd> factor(system.hessian.selfadjointView<Eigen::Lower>());
   NormalEquations fixed(layout.size());
   add_spectra_and_smoothness(held, trainer, fixed);

@@ -27,12 +27,12 @@ struct ResponseOptions {
 /// Linear and Nonlinear Equations, sect. 5.4.1). Spectra, smoothing and gauge enter by their Hessian. How close the
 /// answer comes to training again: docs/template.md.
 ///
-/// @param candidate_of the candidate behind each supernova. @param standard_star needed where the catalogue's systems
-/// refer to it.
+/// @param candidate_of the candidate behind each supernova. @param system assembled at the optimum. @param
+/// standard_star needed where the catalogue's systems refer to it.
 std::vector<CalibrationResponse> calibration_responses(
     const TrainingState& state, std::span<const TrainingSupernova> supernovae,
     std::span<const TrainingCandidate> candidates, std::span<const std::size_t> candidate_of,
     const PassbandCatalogue& catalogue, const std::optional<Spectrum>& standard_star, const Extinction& dust,
-    const TrainerOptions& trainer, const ResponseOptions& options = {});
+    const NormalEquations& system, const TrainerOptions& trainer, const ResponseOptions& options = {});
 
 }  // namespace thirdrung

@@ -3,6 +3,7 @@
 #include <fmt/format.h>
 
 #include <algorithm>
+#include <cmath>
 #include <limits>
 #include <map>
 #include <set>
@@ -37,6 +38,15 @@ Fold without_fold(const TrainingResult& result, int fold, int folds) {
 void append(LightCurveFits& into, LightCurveFits&& fits) {
   std::move(fits.fits.begin(), fits.fits.end(), std::back_inserter(into.fits));
   std::move(fits.set_aside.begin(), fits.set_aside.end(), std::back_inserter(into.set_aside));
+}
+
+/// A prior that is not as wide as the population changes the scale of what it is for (spread_terms.h).
+void warn_of_width(const std::string& name, double prior, double found, std::vector<std::string>& warnings) {
+  if (std::abs(prior / found - 1) < 0.1) return;
+  warnings.push_back(fmt::format(
+      "The prior takes {0} to spread by {1:.3f}, and the training set spreads by {2:.3f}: the scale of {0} comes out "
+      "wrong. Train again with {0}_width = {2:.3f}.",
+      name, prior, found));
 }
 
 std::vector<TrainingCandidate> chosen_of(std::span<const TrainingCandidate> candidates,
@@ -139,12 +149,15 @@ TrainingResult run_training(std::span<const TrainingCandidate> candidates, std::
   result.folds = setup.cross_validation.folds;
   train(result.state, supernovae, options);
   result.log = result.state.log;
+  result.population = population_of(result.state, supernovae, options.threads);
+  warn_of_width("s", options.prior.s_width, result.population.s.width, result.warnings);
+  warn_of_width("c", options.prior.c_width, result.population.c.width, result.warnings);
 
   std::vector<EliminatedSupernova> eliminated;
   const NormalEquations system = assemble(result.state, supernovae, options, eliminated);
   TemplateUncertainty uncertainty = template_uncertainty(result.state.model, system, setup.covariance_modes);
   result.trained.responses = calibration_responses(result.state, supernovae, candidates, result.selection.candidate,
-                                                   catalogue, standard_star, dust, options);
+                                                   catalogue, standard_star, dust, system, options);
   result.trained.covariance_modes = std::move(uncertainty.modes);
   result.covariance = std::move(uncertainty.covariance);
   result.offsets = zero_point_offsets(result.state.model, supernovae, result.state.unknowns,

@@ -8,6 +8,7 @@
 #include "lightcurve/fit.h"
 #include "template/trained_template.h"
 #include "training/cross_validation.h"
+#include "training/population.h"
 #include "training/selection.h"
 #include "training/template_bases.h"
 #include "training/trainer.h"
@@ -44,7 +45,8 @@ struct TrainingResult {
   TrainingState state;                        ///< At the optimum.
   Smoothness smoothness;                      ///< As used.
   int folds = 5;                              ///< Of cross-validation and out-of-fold fits.
-  std::vector<std::string> spectra_left_out;  ///< \"reason: count\".
+  std::vector<std::string> spectra_left_out;  ///< "reason: count".
+  TrainingPopulation population;              ///< At the optimum.
   CrossValidationResult cross_validation;
   Eigen::MatrixXd covariance;            ///< Of all coefficients.
   std::vector<ZeroPointOffset> offsets;  ///< That the data would prefer.

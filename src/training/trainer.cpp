@@ -118,7 +118,7 @@ Eigen::VectorXd back_into_gauge(SpectralTemplate& model, const Factor& factor) {
   return at;
 }
 
-/// One round of Gauss–Newton until the objective settles. Returns false if no step could be taken.
+/// Gauss–Newton until the objective settles.
 void iterate(TrainingState& state, std::span<const TrainingSupernova> supernovae, const TrainerOptions& options) {
   const CoefficientLayout layout(state.model);
   double damping = 1e-6;

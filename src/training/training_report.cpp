@@ -64,9 +64,11 @@ std::string summary_text(const TrainingResult& result) {
   out += fmt::format(
       "| fiducial supernova (s = 1, c = 0) | |\n|---|---:|\n| B − V at B maximum | {:+.3f} mag |\n| Δm15(B) | {:.3f} "
       "mag |\n"
-      "| Δm15(B) at s = 0.8, 1.2 | {:.3f}, {:.3f} mag |\n| largest error of the gauge | {:.1e} |\n\n",
+      "| Δm15(B) at s = 0.8, 1.2 | {:.3f}, {:.3f} mag |\n| largest error of the gauge | {:.1e} |\n\n"
+      "Population of the training set, by maximum likelihood: s {:.3f} ± {:.3f}, c {:+.3f} ± {:.3f} mag.\n\n",
       model.b_magnitude(0) - model.v_magnitude(0), model.dm15_b(1), model.dm15_b(0.8), model.dm15_b(1.2),
-      gauge_errors(model).largest());
+      gauge_errors(model).largest(), result.population.s.mean, result.population.s.width, result.population.c.mean,
+      result.population.c.width);
   for (const std::string& warning : result.warnings) out += fmt::format("**Caution.** {}\n\n", warning);
   return out;
 }

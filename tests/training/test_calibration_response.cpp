@@ -94,8 +94,10 @@ TEST_CASE("stored response to a zero point agrees with training again", "[realda
   TrainingState state = selection.state;
   train(state, selection.supernovae, options);
   const CoefficientLayout layout(state.model);
+  std::vector<EliminatedSupernova> eliminated;
+  const NormalEquations system = assemble(state, selection.supernovae, options, eliminated);
   const auto responses = calibration_responses(state, selection.supernovae, setting.candidates, selection.candidate,
-                                               setting.catalogue, setting.star, dust, options);
+                                               setting.catalogue, setting.star, dust, system, options);
   for (const std::string passband : {"ps1-g", "ps1-i", "csp-B"}) {
     const auto response =
         std::find_if(responses.begin(), responses.end(), [&](const auto& r) { return r.passband == passband; });
