@@ -2,7 +2,7 @@
 
 #include <fmt/format.h>
 
-#include <Eigen/Cholesky>
+#include <Eigen/Eigenvalues>
 #include <algorithm>
 #include <cmath>
 
@@ -145,7 +145,8 @@ void remark_on(const Problem& problem, const Solution& solution, bool reselected
   add_if(!(error[0] < options.largest_t_0_error * (1 + fit.z_helio) && error[2] < options.largest_s_error &&
            error[3] < options.largest_c_error),
          Remark::weakly_determined);
-  add_if(fit.first_phase > options.late_start, Remark::starts_late);
+  const bool dated = error[0] < options.late_t_0_error * (1 + fit.z_helio);
+  add_if(fit.first_phase > (dated ? options.latest_start : options.late_start), Remark::starts_late);
   add_if(fit.fit_probability < options.improbable && fit.chi2 > options.impossible_chi2_per_dof * fit.dof,
          Remark::improbable);
   add_if(fit.first_phase > 0 || fit.last_phase < 0, Remark::t_0_outside_data);
@@ -186,7 +187,12 @@ void fill(const Problem& problem, const LightCurve& light_curve, const PreparedT
 bool is_definite(const Eigen::Matrix4d& covariance) {
   const Eigen::Vector4d scale = covariance.diagonal().cwiseSqrt().cwiseInverse();
   const Eigen::Matrix4d correlation = scale.asDiagonal() * covariance * scale.asDiagonal();
-  return correlation.allFinite() && Eigen::LLT<Eigen::Matrix4d>(correlation).info() == Eigen::Success;
+  if (!correlation.allFinite()) return false;
+  // Rounding leaves a singular matrix an eigenvalue of 1e-16 of either sign; two parameters of a fit correlated to
+  // 0.99999 leave 1e-5.
+  constexpr double smallest = 1e-10;
+  using Solver = Eigen::SelfAdjointEigenSolver<Eigen::Matrix4d>;
+  return Solver(correlation, Eigen::EigenvaluesOnly).eigenvalues()[0] > smallest;
 }
 
 bool LightCurveFit::trusted() const {

@@ -40,7 +40,9 @@ struct FitOptions {
   std::optional<Prior> s_prior;      ///< None by default.
   std::optional<Prior> c_prior;
 
-  double late_start = 5;  ///< First phase beyond which a fit is called late [d].
+  /// A fit whose first phase is beyond `late_start` is called late, and not trusted, where the error of t_0 is above
+  /// `late_t_0_error`, rest frame, or nothing is seen before `latest_start` [d]. Measured: docs/validation.md.
+  double late_start = 5, late_t_0_error = 1, latest_start = 10;
   /// χ² is called impossible where fit_probability is below the first and χ² per degree of freedom above the second:
   /// the template's scatter is an average over supernovae, and a long light curve of an odd one can exceed it in
   /// probability without being far off.

@@ -19,7 +19,7 @@ enum class Remark {
   t_0_at_bound,        ///< Best t_0 at the end of the window searched.
   competing_solution,  ///< Another solution, far in t_0, is nearly as good.
   weakly_determined,   ///< An error is too large for a Gaussian to describe it.
-  starts_late,         ///< No epoch before the phase named in the options.
+  starts_late,         ///< Data that start late do not tell t_0 well.
   improbable,          ///< χ² is too large to be chance.
   t_0_outside_data,    ///< All epochs used are on one side of t_0.
   epochs_mistrusted,   ///< The robust loss gave some epochs little weight.

@@ -17,24 +17,36 @@ constexpr double flux_error_added = 0.1;
 constexpr double amplitude_scatter = 0.4;
 constexpr std::size_t most_starts = 3;
 
-/// One band's flux at m_B = 0, straight between the nodes, for one stretch.
+/// One band's flux at m_B = 0 for one stretch, straight between days.
 class ScanCurve {
  public:
-  ScanCurve(const BandTable& table, double s) : nodes_(table.nodes()), flux_(table.log_flux_at_nodes(s, 0.0)) {
-    for (double& f : flux_) f = std::exp(f);
+  ScanCurve(const BandTable& table, double s) : first_(table.nodes().phases().front()) {
+    const PhaseNodes& nodes = table.nodes();
+    const auto& phase = nodes.phases();
+    std::vector<double> at_nodes = table.log_flux_at_nodes(s, 0.0);
+    for (double& f : at_nodes) f = std::exp(f);
+    days_ = std::floor(phase.back() - first_);
+    flux_.reserve(static_cast<std::size_t>(days_) + 1);
+    for (double day = 0; day <= days_; ++day) {
+      const double q = first_ + day;
+      const std::size_t i = nodes.interval(q);
+      flux_.push_back(at_nodes[i] + (at_nodes[i + 1] - at_nodes[i]) * (q - phase[i]) / (phase[i + 1] - phase[i]));
+    }
   }
   double at(double q) const {
-    const auto& phase = nodes_.phases();
-    if (q < phase.front()) return 0.0;
+    const double day = q - first_;
+    if (day < 0) return 0.0;
     // The late decline of about 0.02 mag a day.
-    if (q > phase.back()) return flux_.back() / (1 + 0.02 * (q - phase.back()));
-    const std::size_t i = nodes_.interval(q);
-    return flux_[i] + (flux_[i + 1] - flux_[i]) * (q - phase[i]) / (phase[i + 1] - phase[i]);
+    if (day >= days_) return flux_.back() / (1 + 0.02 * (day - days_));
+    const auto i = static_cast<int>(day);
+    const double* f = flux_.data() + i;
+    return f[0] + (f[1] - f[0]) * (day - i);
   }
 
  private:
-  const PhaseNodes& nodes_;
-  std::vector<double> flux_;
+  double first_;
+  double days_;
+  std::vector<double> flux_;  ///< Every day from first_ on.
 };
 
 struct Amplitude {
@@ -109,10 +121,11 @@ class Scan {
       for (std::size_t i = 0; i < weight_.size(); ++i) {
         const Observation& o = observed_.observations[i];
         const double f = curves_[k][o.band].at((o.time - t_0) * q_per_day);
+        const double weighted = weight_[i] * f;
         BandSums& sums = sums_[o.band];
         sums.dd += weight_[i] * o.flux * o.flux;
-        sums.df += weight_[i] * o.flux * f;
-        sums.ff += weight_[i] * f * f;
+        sums.df += weighted * o.flux;
+        sums.ff += weighted * f;
       }
       const Amplitude amplitude = common_amplitude(sums_);
       if (amplitude.chi2 < best.chi2) {

@@ -91,6 +91,15 @@ TEST_CASE("a light curve that starts late, or ends before the peak, is fitted an
   CHECK(has(late, Remark::starts_late));
   CHECK(has(late, Remark::t_0_outside_data));
   CHECK_FALSE(late.trusted());
+  // Between +5 and +10 d the error of t_0 decides: the same epochs with small errors and with large ones.
+  const auto dated = lab.fit(truth, observe(truth, lab.model, lab.catalogue, four, 7, 44, 4, 0.01));
+  CHECK(std::sqrt(dated.covariance(0, 0)) < 1);
+  CHECK(dated.trusted());
+  CHECK(has(dated, Remark::t_0_outside_data));
+  const auto undated = lab.fit(truth, observe(truth, lab.model, lab.catalogue, four, 7, 44, 8, 0.06));
+  CHECK(std::sqrt(undated.covariance(0, 0)) > 1.1);
+  CHECK(has(undated, Remark::starts_late));
+  CHECK_FALSE(undated.trusted());
   const auto early = lab.fit(truth, observe(truth, lab.model, lab.catalogue, four, -13, -4, 1, 0.003));
   CHECK(early.t_0 == Approx(truth.t_0).margin(2));
   CHECK(has(early, Remark::t_0_outside_data));
