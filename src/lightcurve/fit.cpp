@@ -77,6 +77,9 @@ bool is_apart(const Solution& a, const Solution& b, double z) {
 
 void describe_epochs(const Problem& problem, const LightCurve& light_curve, const Solution& solution,
                      LightCurveFit& fit) {
+  Eigen::VectorXd flux;
+  FluxSlopes slopes;
+  model_flux(problem.observed, solution.selection, solution.at, flux, slopes);
   for (std::size_t k = 0; k < solution.selection.size(); ++k) {
     const Observation& observation = problem.observed.observations[solution.selection[k]];
     const ObservedBand& band = problem.observed.bands[observation.band];
@@ -88,7 +91,11 @@ void describe_epochs(const Problem& problem, const LightCurve& light_curve, cons
       out.model_error = out.model_flux *
                         std::hypot(problem.model.epoch_scatter(out.phase, band.mean_wavelength), band.colour_scatter);
     }
-    out.pull = (observation.flux - out.model_flux) / std::hypot(std::sqrt(observation.variance), out.model_error);
+    const double variance = observation.variance + out.model_error * out.model_error;
+    out.pull = (observation.flux - out.model_flux) / std::sqrt(variance);
+    // Residuals of a least-squares fit have the covariance C − J (J^T C^−1 J)^−1 J^T.
+    const Eigen::Vector4d by_parameters = slopes.row(static_cast<Eigen::Index>(k));
+    out.freedom = std::max(0.0, 1 - by_parameters.dot(solution.covariance * by_parameters) / variance);
     if (!solution.weights.empty()) out.weight = solution.weights[k];
     out.mistrusted = out.weight < problem.options.mistrust_below;
     fit.first_phase = k == 0 ? out.phase : std::min(fit.first_phase, out.phase);

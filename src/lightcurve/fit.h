@@ -69,6 +69,7 @@ struct FittedEpoch {
   double model_flux = 0;   ///< [uJy]
   double model_error = 0;  ///< Scatter of real supernovae about the template, f √(ε² + κ²) [uJy].
   double pull = 0;         ///< (flux − model) over all errors in quadrature.
+  double freedom = 1;      ///< What is expected of pull², 1 less what the four parameters take out of it.
   double weight = 1;       ///< Of the robust loss.
   bool mistrusted = false;
 };

@@ -9,7 +9,8 @@
 #include "base/constants.h"
 #include "base/parallel.h"
 #include "base/progress.h"
-#include "training/spread_terms.h"
+#include "training/gauged_step.h"
+#include "training/settled_slope.h"
 
 namespace thirdrung {
 
@@ -46,48 +47,6 @@ Eigen::VectorXd wavelength_slope(const TrainingState& state, std::size_t k, cons
   return out;
 }
 
-/// Minus the gradient of what the light curves say, in all coefficients, at templates near the optimum.
-///
-/// Unknowns, noise and robust weights of every supernova are settled at each, from where the last call left them.
-class SettledGradient {
- public:
-  SettledGradient(const TrainingState& state, const TrainerOptions& trainer)
-      : unknowns_(state.unknowns), robust_weights_(state.robust_weights), trainer_(trainer) {}
-
-  Eigen::VectorXd at(const SpectralTemplate& model, std::span<const TrainingSupernova> supernovae) {
-    constexpr std::size_t groups = 4;  // Summed in order, whatever the number of threads.
-    const CoefficientLayout layout(model);
-    std::vector<Eigen::VectorXd> sums(groups, Eigen::VectorXd::Zero(layout.size()));
-    parallel_for(groups, trainer_.threads, [&](std::size_t group) {
-      for (std::size_t k = group; k < supernovae.size(); k += groups) {
-        add(layout, model, supernovae[k], unknowns_[k], robust_weights_[k], sums[group]);
-      }
-    });
-    for (std::size_t group = 1; group < groups; ++group) sums.front() += sums[group];
-    return sums.front();
-  }
-
- private:
-  void add(const CoefficientLayout& layout, const SpectralTemplate& model, const TrainingSupernova& sn,
-           SupernovaUnknowns& at, Eigen::VectorXd& weight, Eigen::VectorXd& into) const {
-    const Eigen::Matrix4d covariance = fit_supernova(model, sn, trainer_.prior, trainer_.robust_degrees, at, weight);
-    const LinearisedSupernova line = linearise(model, sn, at, weight);
-    const Eigen::VectorXd weighted = apply_inverse(sn, line.noise, line.model.flux, line.residual).col(0);
-    Eigen::VectorXd slope = Eigen::VectorXd::Zero(layout.size());
-    for (const TrainingBand& band : sn.bands) {
-      for (std::size_t e = band.begin; e < band.end; ++e) {
-        add_gradient(layout, band, line.gradients[e], weighted(static_cast<Eigen::Index>(e)), into);
-      }
-    }
-    add_spread_slope(layout, sn, line, covariance, slope);
-    into -= slope;
-  }
-
-  std::vector<SupernovaUnknowns> unknowns_;
-  std::vector<Eigen::VectorXd> robust_weights_;
-  const TrainerOptions& trainer_;
-};
-
 enum class Calibration { zero_point, wavelength };
 
 /// The training set with the calibration of one passband moved by `step`.
@@ -102,7 +61,7 @@ std::vector<TrainingSupernova> moved_data(const TrainingState& state, std::span<
     for (const TrainingBand& band : sn.bands) {
       if (band.passband != passband) continue;
       if (what == Calibration::zero_point) {
-        const double factor = 1 - constants::ln_flux_per_mag * step;
+        const double factor = std::exp(-constants::ln_flux_per_mag * step);
         for (std::size_t e = band.begin; e < band.end; ++e) {
           sn.epochs[e].flux *= factor;
           sn.epochs[e].flux_error *= factor;
@@ -126,32 +85,31 @@ std::vector<CalibrationResponse> calibration_responses(
     std::span<const TrainingCandidate> candidates, std::span<const std::size_t> candidate_of,
     const PassbandCatalogue& catalogue, const std::optional<Spectrum>& standard_star, const Extinction& dust,
     const NormalEquations& system, const TrainerOptions& trainer, const ResponseOptions& options) {
-  std::set<std::string> passbands;
+  std::set<std::string> passbands(options.passbands.begin(), options.passbands.end());
+  const bool all = passbands.empty();
   for (const TrainingSupernova& sn : supernovae) {
-    for (const TrainingBand& band : sn.bands) passbands.insert(band.passband);
+    for (const TrainingBand& band : sn.bands) {
+      if (all) passbands.insert(band.passband);
+    }
   }
   const CoefficientLayout layout(state.model);
   const Eigen::VectorXd start = layout.gather(state.model);
-  TrainingState held = state;
-  const Eigen::LLT<Eigen::MatrixXd> factor(system.hessian.selfadjointView<Eigen::Lower>());
-  NormalEquations fixed(layout.size());
-  add_spectra_and_smoothness(held, trainer, fixed);
-  add_gauge(held.model, trainer.gauge_error, fixed);
-  SettledGradient settled(state, trainer);
+  const GaugedStep gauged(state.model, system, trainer.gauge_error);
+  SettledSlope settled(state, trainer);
+  // The trainer stops short of the last digit: what is left then belongs to no calibration.
   const Eigen::VectorXd at_optimum = settled.at(state.model, supernovae);
+  const Eigen::VectorXd unfinished = at_optimum - gauged.from(state.model, at_optimum).held;
 
   Progress progress("Responses to calibration", 2 * passbands.size());
   const auto response = [&](const std::string& passband, Calibration what, double step) {
     const std::vector<TrainingSupernova> moved = moved_data(state, supernovae, candidates, candidate_of, catalogue,
                                                             standard_star, dust, passband, what, step, trainer.threads);
-    SettledGradient gradient = settled;
+    SettledSlope slope = settled;
     Eigen::VectorXd reached = Eigen::VectorXd::Zero(layout.size());
     for (int correction = 0; correction <= options.corrections; ++correction) {
       SpectralTemplate model = state.model;
       layout.scatter(start + reached, model);
-      const Eigen::VectorXd left =
-          gradient.at(model, moved) - at_optimum - fixed.hessian.selfadjointView<Eigen::Lower>() * reached;
-      reached += factor.solve(left);
+      reached += gauged.from(model, slope.at(model, moved) - unfinished).step;
     }
     progress.advance();
     return Eigen::VectorXd(reached / step);

@@ -21,7 +21,8 @@ struct UnknownsPrior {
 struct NormalEquations {
   Eigen::MatrixXd hessian;   ///< Lower triangle filled.
   Eigen::VectorXd gradient;  ///< −∂(objective)/∂coefficients.
-  Eigen::VectorXd spread;    ///< The part of the objective's slope that is the unknowns' freedom, counted in gradient.
+  Eigen::VectorXd spread;    ///< The part of the objective's slope that is the unknowns' freedom and holds the time
+                             ///< scale (time_scale.h), counted in gradient.
 
   explicit NormalEquations(int size)
       : hessian(Eigen::MatrixXd::Zero(size, size)),

@@ -50,7 +50,6 @@ std::vector<HeldOutPoint> held_out_points(const TrainingResult& result, std::spa
     const auto source = light_curve_of.find({fit.survey, fit.supernova});
     if (trained == wavelength_of.end() || source == light_curve_of.end()) continue;
     if (!fit.trusted() || fit.epochs.size() <= 4) continue;
-    const double freedom = 1 - 4.0 / static_cast<double>(fit.epochs.size());
     for (const FittedEpoch& fitted : fit.epochs) {
       const Epoch& epoch = source->second->epochs[fitted.epoch];
       const std::string& passband = source->second->passbands[epoch.passband];
@@ -58,7 +57,7 @@ std::vector<HeldOutPoint> held_out_points(const TrainingResult& result, std::spa
       if (wavelength == trained->second.end() || !(fitted.model_flux > 0)) continue;
       const double error = std::hypot(epoch.flux_error, fitted.model_error) / fitted.model_flux;
       HeldOutPoint point{supernova,   fit.survey, passband, fitted.phase, wavelength->second, fit.z_helio,
-                         fitted.pull, 0,          0,        freedom};
+                         fitted.pull, 0,          0,        fitted.freedom};
       point.magnitude = -(epoch.flux / fitted.model_flux - 1) / constants::ln_flux_per_mag;
       point.weight = std::pow(constants::ln_flux_per_mag / error, 2);
       out.push_back(point);

@@ -20,7 +20,7 @@ struct HeldOutPoint {
   double pull = 0;       ///< (data − template) over all errors in quadrature.
   double magnitude = 0;  ///< Data − template, to first order: −1.086 (f_data − f)/f [mag].
   double weight = 0;     ///< Of `magnitude` [mag^-2].
-  double freedom = 1;    ///< Its share of the fit's degrees of freedom, 1 − 4/n.
+  double freedom = 1;    ///< Expected square of the pull, FittedEpoch::freedom.
 };
 
 /// What the held-out points of one bin say.

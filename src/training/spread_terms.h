@@ -15,8 +15,8 @@ namespace thirdrung {
 /// does not; its Laplace approximation has ½ ln det(L^T C^-1 L + prior) besides, whose slope is that of the trace above
 /// with Σ held, as in an expectation-maximisation step (Tierney & Kadane 1986, J. Am. Stat. Assoc. 81, 82; Dempster,
 /// Laird & Rubin 1977, J. R. Stat. Soc. B 39, 1). Φ and the shares of the wavelengths in a band are held too: they
-/// shape the mean light curve and only at second order what s and c do to it, and a change of them that goes with one
-/// of s and c (the zero of c, the unit of s) must stay free.
+/// shape the mean light curve and only at second order what s and c do to it, but for the time scale, where the slope
+/// is corrected (time_scale.h).
 void add_spread_slope(const CoefficientLayout& layout, const TrainingSupernova& sn, const LinearisedSupernova& line,
                       const Eigen::Matrix4d& covariance, Eigen::VectorXd& into);
 

@@ -148,4 +148,18 @@ void add_gradient(const CoefficientLayout& layout, const TrainingBand& band, con
   into.segment(layout.colour(band.colour_first), band.colour_count) += scale * gradient.colour;
 }
 
+double gradient_along(const CoefficientLayout& layout, const TrainingBand& band, const EpochGradient& gradient,
+                      const Eigen::VectorXd& direction) {
+  double out = gradient.colour.dot(direction.segment(layout.colour(band.colour_first), band.colour_count));
+  for (int i = 0; i < 4; ++i) {
+    const auto k = static_cast<std::size_t>(i);
+    out += gradient.phi_phase.value[k] * gradient.phi.dot(direction.segment(
+                                             layout.phi(gradient.phi_phase.first + i, band.phi_first), band.phi_count));
+    out += gradient.gamma_phase.value[k] *
+           gradient.gamma.dot(
+               direction.segment(layout.gamma(gradient.gamma_phase.first + i, band.gamma_first), band.gamma_count));
+  }
+  return out;
+}
+
 }  // namespace thirdrung

@@ -46,8 +46,11 @@ Eigen::MatrixXd apply_inverse(const TrainingSupernova& sn, const SupernovaNoise&
 /// ln det C.
 double log_determinant(const TrainingSupernova& sn, const SupernovaNoise& noise, const Eigen::VectorXd& flux);
 
-/// Adds `scale` × the gradient to a vector over all coefficients, or returns its product with one.
+/// Adds `scale` × the gradient to a vector over all coefficients.
 void add_gradient(const CoefficientLayout& layout, const TrainingBand& band, const EpochGradient& gradient,
                   double scale, Eigen::Ref<Eigen::VectorXd> into);
+/// The gradient's product with a vector over all coefficients.
+double gradient_along(const CoefficientLayout& layout, const TrainingBand& band, const EpochGradient& gradient,
+                      const Eigen::VectorXd& direction);
 
 }  // namespace thirdrung

@@ -10,6 +10,7 @@
 
 #include "base/constants.h"
 #include "base/parallel.h"
+#include "training/time_scale.h"
 
 namespace thirdrung {
 
@@ -116,6 +117,21 @@ Eigen::VectorXd back_into_gauge(SpectralTemplate& model, const Factor& factor) {
     layout.scatter(at, model);
   }
   return at;
+}
+
+/// Sees to it that what does not know the time scale does not set it, in a system without the gauge.
+void hold_time_scale(const SpectralTemplate& model, const TrainerOptions& options,
+                     std::span<const EliminatedSupernova> eliminated, NormalEquations& system) {
+  const TimeScale scale = time_scale(model);
+  const HeldTimeScale held(scale, system.hessian.selfadjointView<Eigen::Lower>() * scale.direction);
+  double cost = 0;
+  for (const EliminatedSupernova& one : eliminated) cost += time_scale_cost(one.local_inverse(2, 2), options.prior);
+  NormalEquations smooth(static_cast<int>(system.gradient.size()));
+  add_smoothness(model, options.smoothness, smooth);
+  const Eigen::VectorXd before = system.spread;
+  held.correct_spread(cost, system.spread);
+  system.spread += held.part_along(smooth.gradient);
+  system.gradient -= system.spread - before;
 }
 
 /// Gauss–Newton until the objective settles.
@@ -295,6 +311,7 @@ NormalEquations assemble(TrainingState& state, std::span<const TrainingSupernova
   NormalEquations system = eliminate_supernovae(state.model, supernovae, state.unknowns, state.robust_weights,
                                                 options.prior, options.threads, eliminated);
   add_spectra_and_smoothness(state, options, system);
+  hold_time_scale(state.model, options, eliminated, system);
   add_gauge(state.model, options.gauge_error, system);
   return system;
 }

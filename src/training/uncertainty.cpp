@@ -10,16 +10,24 @@ namespace thirdrung {
 
 namespace {
 
-/// Gradient of ln flux in one band of the fiducial supernova, in all coefficients.
-Eigen::VectorXd log_flux_gradient(const SpectralTemplate& model, const std::vector<double>& weight, double phase) {
+/// Covariance of a Gaussian once the linear forms `given` are known.
+Eigen::MatrixXd given_conventions(const Eigen::MatrixXd& covariance, const Eigen::MatrixXd& given) {
+  const Eigen::MatrixXd cross = covariance * given;
+  const Eigen::MatrixXd known = given.transpose() * cross;
+  return covariance - cross * Eigen::LLT<Eigen::MatrixXd>(known).solve(cross.transpose());
+}
+
+}  // namespace
+
+Eigen::VectorXd log_flux_gradient(const SpectralTemplate& model, const RestBand& band, double phase) {
   const CoefficientLayout layout(model);
   Eigen::VectorXd out = Eigen::VectorXd::Zero(layout.size());
   const auto phase_weights = model.phase_basis.at(phase);
   double all = 0;
-  for (std::size_t j = 0; j < weight.size(); ++j) {
-    if (weight[j] == 0.0) continue;
-    const double photons = weight[j] * model.flux(phase, model.gauge_wavelength[j], 1, 0);
-    const auto wave = model.wavelength_basis.at(model.gauge_wavelength[j]);
+  for (std::size_t j = 0; j < band.weight.size(); ++j) {
+    if (band.weight[j] == 0.0) continue;
+    const double photons = band.weight[j] * model.flux(phase, band.wavelength[j], 1, 0);
+    const auto wave = model.wavelength_basis.at(band.wavelength[j]);
     for (int i = 0; i < 4; ++i) {
       for (int k = 0; k < 4; ++k) {
         out(layout.phi(phase_weights.first + i, wave.first + k)) +=
@@ -31,23 +39,14 @@ Eigen::VectorXd log_flux_gradient(const SpectralTemplate& model, const std::vect
   return out / all;
 }
 
-/// Columns: gradient of the fiducial B − V at maximum, and of its decline in B over 15 d, both in ln flux.
 Eigen::MatrixXd convention_gradients(const SpectralTemplate& model) {
-  const Eigen::VectorXd b = log_flux_gradient(model, model.gauge_weight_b, 0);
-  Eigen::MatrixXd out(b.size(), 2);
-  out.col(0) = log_flux_gradient(model, model.gauge_weight_v, 0) - b;
-  out.col(1) = log_flux_gradient(model, model.gauge_weight_b, 15) - b;
+  const RestBand b = gauge_band_b(model);
+  const Eigen::VectorXd b_at_maximum = log_flux_gradient(model, b, 0);
+  Eigen::MatrixXd out(b_at_maximum.size(), 2);
+  out.col(0) = log_flux_gradient(model, gauge_band_v(model), 0) - b_at_maximum;
+  out.col(1) = log_flux_gradient(model, b, 15) - b_at_maximum;
   return out;
 }
-
-/// Covariance of a Gaussian once the linear forms `given` are known.
-Eigen::MatrixXd given_conventions(const Eigen::MatrixXd& covariance, const Eigen::MatrixXd& given) {
-  const Eigen::MatrixXd cross = covariance * given;
-  const Eigen::MatrixXd known = given.transpose() * cross;
-  return covariance - cross * Eigen::LLT<Eigen::MatrixXd>(known).solve(cross.transpose());
-}
-
-}  // namespace
 
 TemplateUncertainty template_uncertainty(const SpectralTemplate& model, const NormalEquations& system, int mode_count) {
   const auto n = system.hessian.rows();

@@ -2,7 +2,7 @@
 
 #include <Eigen/Core>
 
-#include "template/spectral_template.h"
+#include "template/rest_band.h"
 #include "training/normal_equations.h"
 
 namespace thirdrung {
@@ -18,6 +18,11 @@ struct TemplateUncertainty {
   Eigen::MatrixXd covariance;  ///< All coefficients.
   Eigen::MatrixXd modes;       ///< Covariance given the fiducial B − V and decline ≈ modes modes^T.
 };
+
+/// Gradient of the fiducial supernova's ln flux in one band at one phase, in all coefficients.
+Eigen::VectorXd log_flux_gradient(const SpectralTemplate& model, const RestBand& band, double phase);
+/// Columns: gradients of the two conventions, the fiducial B − V at maximum and the decline in B over 15 d, in ln flux.
+Eigen::MatrixXd convention_gradients(const SpectralTemplate& model);
 
 /// @param mode_count how many modes are kept: those of the correlation matrix with the largest eigenvalues.
 TemplateUncertainty template_uncertainty(const SpectralTemplate& model, const NormalEquations& system, int mode_count);

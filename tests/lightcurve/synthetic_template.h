@@ -6,6 +6,7 @@
 #include <vector>
 
 #include "base/constants.h"
+#include "template/interpolation.h"
 #include "template/spectral_template.h"
 
 namespace thirdrung::testing {
@@ -15,17 +16,6 @@ inline std::vector<double> regular(double first, double last, double step) {
   std::vector<double> out;
   const auto count = static_cast<int>(std::lround((last - first) / step));
   for (int i = 0; i <= count; ++i) out.push_back(first + step * i);
-  return out;
-}
-
-/// Values of every basis function at its own centre, row by row.
-inline Eigen::MatrixXd collocation(const CubicBasis& basis) {
-  const auto centre = basis.centres();
-  Eigen::MatrixXd out = Eigen::MatrixXd::Zero(basis.size(), basis.size());
-  for (int i = 0; i < basis.size(); ++i) {
-    const auto w = basis.at(centre[static_cast<std::size_t>(i)]);
-    for (int k = 0; k < 4; ++k) out(i, w.first + k) = w.value[static_cast<std::size_t>(k)];
-  }
   return out;
 }
 
@@ -39,8 +29,7 @@ inline Eigen::MatrixXd fit_surface(const CubicBasis& phase, const CubicBasis& wa
       value(i, j) = f(p[static_cast<std::size_t>(i)], l[static_cast<std::size_t>(j)]);
     }
   }
-  const Eigen::MatrixXd in_phase = collocation(phase).partialPivLu().solve(value);
-  return collocation(wavelength).partialPivLu().solve(in_phase.transpose()).transpose();
+  return interpolate(phase, wavelength, value);
 }
 
 /// A triangle in wavelength.
