@@ -28,4 +28,4 @@ inline std::optional<std::filesystem::path> real_data_folder() {
     WARN("skipped: no published data (set THIRDRUNG_REAL_DATA to their folder)"); \
     return;                                                                       \
   }                                                                               \
-  const std::filesystem::path folder = *folder##_found
+  const std::filesystem::path& folder = *folder##_found

@@ -39,6 +39,7 @@ constexpr std::array<KnownSection, 15> known_sections = {{{"run", read_run_secti
 
 void refuse_unknown_sections(const toml::table& root, const std::string& file) {
   std::vector<std::string> names;
+  names.reserve(known_sections.size());
   for (const KnownSection& known : known_sections) names.emplace_back(known.name);
   for (const auto& [key, node] : root) {
     const std::string word(key.str());

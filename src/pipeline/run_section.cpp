@@ -104,7 +104,7 @@ std::string RunSection::text(const std::string& key, const std::string& otherwis
 std::optional<std::string> RunSection::optional_text(const std::string& key) {
   const toml::node* node = find(key);
   if (node == nullptr) return std::nullopt;
-  const auto value = node->value_exact<std::string>();
+  auto value = node->value_exact<std::string>();
   if (!value || value->empty()) wrong_kind(key, "a text in quotes");
   return value;
 }
@@ -175,7 +175,7 @@ std::vector<std::string> RunSection::texts(const std::string& key) {
 }
 
 std::string RunSection::choice(const std::string& key, std::span<const std::string> allowed) {
-  const std::string word = text(key, allowed.front());
+  std::string word = text(key, allowed.front());
   for (const std::string& one : allowed) {
     if (word == one) return word;
   }

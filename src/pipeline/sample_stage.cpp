@@ -226,6 +226,7 @@ void write_fit(SampleWriter& out, const std::vector<CutSubject>& subjects) {
   out.integers("bands", "passbands fitted", [](M m) { return static_cast<std::int64_t>(m.bands.size()); });
   out.integers("epochs", "epochs fitted", [](M m) { return m.epochs; });
   std::vector<bool> trusted;
+  trusted.reserve(subjects.size());
   for (const CutSubject& one : subjects) trusted.push_back(one.trusted);
   out.table.add_flags("trusted", std::move(trusted), "no remark speaks against the fit");
   out.reals("surveys_agree", "", "chance that surveys differ as much in m_b, s, c", [](M m) { return m.agreement; });

@@ -64,6 +64,7 @@ std::vector<ScanRow> correction_rows(const RunFile& run, const ScanFrame& frame,
   const auto rows = rows_in_order(sample, frame.sample().supernovae);
   const auto all = standardisation_data(run, sample, std::vector<bool>(sample.rows(), true));
   std::vector<StandardisationDatum> data;
+  data.reserve(rows.size());
   for (const std::size_t row : rows) data.push_back(all[row]);
   const HostMassOptions& mass = run.standardisation.options.host_mass;
   std::vector<ScanRow> out;

@@ -15,7 +15,7 @@ void condense(std::vector<SystematicShift>& shifts, const std::string& stem) {
   Eigen::MatrixXd matrix(members.front().shift.size(), static_cast<Eigen::Index>(members.size()));
   for (std::size_t k = 0; k < members.size(); ++k) matrix.col(static_cast<Eigen::Index>(k)) = members[k].shift;
   const Eigen::BDCSVD<Eigen::MatrixXd> principal(matrix, Eigen::ComputeThinU);
-  const Eigen::VectorXd size = principal.singularValues();
+  const Eigen::VectorXd& size = principal.singularValues();
   double left = size.squaredNorm();
   const double enough = 1e-4 * left;
   for (Eigen::Index k = 0; k < size.size() && left > enough; ++k) {

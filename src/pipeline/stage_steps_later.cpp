@@ -146,7 +146,7 @@ StageStep join_step() {
   StageStep step;
   step.wanted = [](const RunFile& run) { return run.join.wanted; };
   step.depends_on = [](const StageContext& context) {
-    const std::string join = settings_of(context.run, {"join"}) + content_of(context, "intercept.ecsv");
+    std::string join = settings_of(context.run, {"join"}) + content_of(context, "intercept.ecsv");
     if (!context.run.join.calibrators.given()) return join;
     return join + settings_of(context.run, {"cuts", "standardisation"}) + covariance_depends_on(context) +
            context.all_inputs + content_of(context, "sample.ecsv") + content_of(context, "standardisation.ecsv") +

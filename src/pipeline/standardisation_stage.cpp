@@ -102,6 +102,7 @@ Table magnitudes_table(const Table& chosen, const std::vector<StandardisedMagnit
 
 void add_selection_bias(Table& table, const std::vector<StandardisedMagnitude>& magnitudes) {
   std::vector<double> bias;
+  bias.reserve(magnitudes.size());
   for (const StandardisedMagnitude& one : magnitudes) bias.push_back(one.selection_bias);
   table.add_reals("selection_bias", std::move(bias), "mag", "by the magnitude limit, taken off m_b_standardised");
 }

@@ -248,6 +248,7 @@ TrainingResult train_from_file(const TrainingFile& file, const TrainingOutput& o
     write_table(fits_table(result.check.with_offsets.fits), output.folder / "check-fits-with-offsets.ecsv");
   }
   std::vector<LightCurve> light_curves;
+  light_curves.reserve(candidates.size());
   for (const TrainingCandidate& candidate : candidates) light_curves.push_back(candidate.light_curve);
   write_training_report(result, light_curves, output.folder);
   if (!result.out_of_fold.fits.empty()) {

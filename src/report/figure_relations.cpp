@@ -105,22 +105,27 @@ std::size_t columns_for(double width, std::size_t panels, std::size_t most) {
   return std::min(fit, panels);
 }
 
+/// Rows that so many panels take up; none without a panel.
+std::size_t rows_for(std::size_t panels, std::size_t columns) {
+  return panels == 0 ? 0 : (panels + columns - 1) / columns;
+}
+
 void draw_residuals(Drawing& drawing, const ChartInput& input) {
   const auto list = present(input, false);
-  const std::size_t columns = columns_for(drawing.width(), list.size(), 2),
-                    rows = (list.size() + columns - 1) / columns;
+  const std::size_t columns = columns_for(drawing.width(), list.size(), 2), rows = rows_for(list.size(), columns);
   const double key =
       draw_survey_key(drawing, input.all, left_margin, top_margin, drawing.width() - left_margin - right_margin);
   const double cell_w = drawing.width() / static_cast<double>(columns),
                cell_h = (drawing.height() - key - top_margin) / static_cast<double>(rows);
   const auto r = used_values(input.all, &SupernovaRow::residual);
   for (std::size_t k = 0; k < list.size(); ++k) {
-    const double x = cell_w * static_cast<double>(k % columns) + left_margin,
-                 y = top_margin + key + cell_h * static_cast<double>(k / columns);
+    const std::size_t column = k % columns, row = k / columns;
+    const double x = cell_w * static_cast<double>(column) + left_margin,
+                 y = top_margin + key + cell_h * static_cast<double>(row);
     const PlotArea area(x, y, cell_w - left_margin - right_margin, cell_h - bottom_margin - 4,
                         {list[k].title, range_of(used_values(input.all, list[k].member))},
                         {"residual (mag)", residual_range(input.all), false, true});
-    area.frame(drawing, true, k % columns == 0);
+    area.frame(drawing, true, column == 0);
     area.level(drawing, 0);
     draw_points(drawing, area, input.all, list[k].member, r, &SupernovaRow::residual_error, 6);
   }
@@ -128,8 +133,7 @@ void draw_residuals(Drawing& drawing, const ChartInput& input) {
 
 void draw_standardisation(Drawing& drawing, const ChartInput& input) {
   const auto list = present(input, true);
-  const std::size_t columns = columns_for(drawing.width(), list.size(), 3),
-                    rows = (list.size() + columns - 1) / columns;
+  const std::size_t columns = columns_for(drawing.width(), list.size(), 3), rows = rows_for(list.size(), columns);
   const double cell_w = drawing.width() / static_cast<double>(columns),
                cell_h = drawing.height() / static_cast<double>(rows);
   const auto r = used_values(input.all, &SupernovaRow::residual),
@@ -140,8 +144,9 @@ void draw_standardisation(Drawing& drawing, const ChartInput& input) {
     for (const SupernovaRow& row : input.all.rows) {
       if (row.used) before.push_back(residual_without(row, list[k].parameter, value));
     }
-    const double x = cell_w * static_cast<double>(k % columns) + left_margin,
-                 y = top_margin + cell_h * static_cast<double>(k / columns);
+    const std::size_t column = k % columns, row = k / columns;
+    const double x = cell_w * static_cast<double>(column) + left_margin,
+                 y = top_margin + cell_h * static_cast<double>(row);
     const double width = cell_w - left_margin - right_margin, height = cell_h - bottom_margin - top_margin - 4;
     const Direction across{list[k].title, range_of(used_values(input.all, list[k].member))};
     const PlotArea above(x, y, width, 0.55 * height, across,
@@ -177,17 +182,17 @@ Figure hubble_figure(const ChartInput& input, double width) {
 }
 
 Figure residual_figure(const ChartInput& input, double width) {
-  const std::size_t count = present(input, false).size(), columns = columns_for(width, count, 2);
+  const std::size_t count = present(input, false).size(), columns = columns_for(width, count, 2),
+                    rows = rows_for(count, columns);
   const bool possible = has_residuals(input.all) && count > 0;
-  return {"residuals", possible, possible ? 30 + 140 * static_cast<double>((count + columns - 1) / columns) : 0,
-          draw_residuals};
+  return {"residuals", possible, possible ? 30 + 140 * static_cast<double>(rows) : 0, draw_residuals};
 }
 
 Figure standardisation_figure(const ChartInput& input, double width) {
-  const std::size_t count = present(input, true).size(), columns = columns_for(width, count, 3);
+  const std::size_t count = present(input, true).size(), columns = columns_for(width, count, 3),
+                    rows = rows_for(count, columns);
   const bool possible = has_residuals(input.all) && count > 0;
-  return {"standardisation", possible, possible ? 245 * static_cast<double>((count + columns - 1) / columns) : 0,
-          draw_standardisation};
+  return {"standardisation", possible, possible ? 245 * static_cast<double>(rows) : 0, draw_standardisation};
 }
 
 std::size_t survey_number(const SupernovaRows& all, const SupernovaRow& row) {

@@ -19,9 +19,9 @@ struct Direction {
   std::string title;  ///< With the unit.
   Range range;
   bool logarithmic = false;
-  bool brighter_up = false;         ///< Magnitudes: small numbers at the top.
-  nlohmann::json values = nullptr;  ///< Tick positions, if not to be chosen by Vega.
-  std::string format = {};          ///< Of the tick labels (d3-format), "" for Vega's choice.
+  bool brighter_up = false;                               ///< Magnitudes: small numbers at the top.
+  nlohmann::json values = nlohmann::json::value_t::null;  ///< Tick positions, if not to be chosen by Vega.
+  std::string format = {};                                ///< Of the tick labels (d3-format), "" for Vega's choice.
 };
 
 /// One plot area; several stand above each other and share their x axis.

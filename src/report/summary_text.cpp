@@ -80,7 +80,8 @@ std::string summary_text(const SummaryTextOptions& options) {
   if (!answer.hubble_constant.empty()) out += "H0  = " + answer.hubble_constant + " km/s/Mpc\n";
   if (!answer.absolute_magnitude.empty()) out += "M_B = " + answer.absolute_magnitude + "\n";
   std::string facts;
-  for (const auto& [label, value] : answer.facts) facts += (facts.empty() ? "" : ", ") + label + " " + value;
+  for (const auto& [label, value] : answer.facts)
+    facts += fmt::format("{}{} {}", facts.empty() ? "" : ", ", label, value);
   if (!facts.empty()) wrap(harmless(facts), "", width, out);
   if (!answer.qualifications.empty()) out += "\n";
   for (const std::string& sentence : answer.qualifications) wrap(harmless(sentence), "  ", width, out);

@@ -56,9 +56,11 @@ std::string vega_bundle(const std::filesystem::path& folder) {
     }
     std::string text = read_file(file);
     erase_from(text, "//# sourceMappingURL");
-    bundle += "(() => {\nconst module = {exports: {}};\n((exports, module, require, define) => {\n" + text +
-              "\n}).call(globalThis, module.exports, module, need);\nloaded['" + module +
-              "'] = module.exports;\n})();\n";
+    bundle += "(() => {\nconst module = {exports: {}};\n((exports, module, require, define) => {\n";
+    bundle += text;
+    bundle += "\n}).call(globalThis, module.exports, module, need);\nloaded['";
+    bundle += module;
+    bundle += "'] = module.exports;\n})();\n";
   }
   bundle += after;
   // Inside an HTML script element this would end it.

@@ -71,6 +71,7 @@ SvgPlot residual_figure(std::span<const HeldOutPoint> points) {
   const auto by_band = bins_by(points, [](const HeldOutPoint& p) { return p.survey + " " + p.passband; });
   const Columns band = columns_of(by_band);
   std::vector<std::string> names;
+  names.reserve(by_band.size());
   for (const ResidualBin& bin : by_band) names.push_back(bin.name);
   const double list_height = std::max(380.0, 19.0 * static_cast<double>(names.size()));
   SvgPlot plot(1060, list_height + 90);
@@ -180,8 +181,9 @@ SvgPlot cross_validation_figure(const CrossValidationResult& result) {
       }
     }
     const double middle = std::log10(result.best.*kinds[k].strength);
+    const std::size_t row = k / 2;
     const double left = 66 + 310 * static_cast<double>(k % 2);
-    const double top = 36 + 245 * static_cast<double>(k / 2);
+    const double top = 36 + 245 * static_cast<double>(row);
     Axis y{-0.1, std::log10(1 + worst) + 0.2, k % 2 == 0 ? "score − best" : "", {}};
     for (const double tick : {0.0, 1.0, 3.0, 10.0, 30.0, 100.0, 300.0, 1000.0, 3000.0, 10000.0, 30000.0}) {
       if (tick < 1.5 * worst) y.ticks.emplace_back(std::log10(1 + tick), fmt::format("{}", tick));

@@ -56,7 +56,7 @@ std::vector<HeldOutPoint> held_out_points(const TrainingResult& result, std::spa
       const auto wavelength = trained->second.find(passband);
       if (wavelength == trained->second.end() || !(fitted.model_flux > 0)) continue;
       const double error = std::hypot(epoch.flux_error, fitted.model_error) / fitted.model_flux;
-      HeldOutPoint point{supernova,   fit.survey, passband, fitted.phase, wavelength->second, fit.z_helio,
+      HeldOutPoint point{supernova,   fit.survey, passband, fitted.phase,  wavelength->second, fit.z_helio,
                          fitted.pull, 0,          0,        fitted.freedom};
       point.magnitude = -(epoch.flux / fitted.model_flux - 1) / constants::ln_flux_per_mag;
       point.weight = std::pow(constants::ln_flux_per_mag / error, 2);
@@ -110,6 +110,7 @@ std::vector<ResidualBin> bins_by(std::span<const HeldOutPoint> points,
   std::map<std::string, std::vector<const HeldOutPoint*>> groups;
   for (const HeldOutPoint& point : points) groups[key(point)].push_back(&point);
   std::vector<ResidualBin> out;
+  out.reserve(groups.size());
   for (const auto& [name, members] : groups) out.push_back(summarise(name, members));
   return out;
 }

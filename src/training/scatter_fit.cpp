@@ -127,10 +127,10 @@ Score score(const TrainingSupernova& sn, const Frozen& frozen, const Eigen::Vect
     const double curvature = 2 * square * square * trace * trace;
     const NodeWeights& w = frozen.band_nodes[b];
     for (std::size_t k = 0; k < 2; ++k) {
-      const auto row = static_cast<Eigen::Index>(epoch_nodes + w.node[k]);
+      const Eigen::Index row = epoch_nodes + w.node[k];
       out.gradient(row) += w.value[k] * slope;
       for (std::size_t l = 0; l < 2; ++l) {
-        out.information(row, static_cast<Eigen::Index>(epoch_nodes + w.node[l])) += w.value[k] * w.value[l] * curvature;
+        out.information(row, epoch_nodes + w.node[l]) += w.value[k] * w.value[l] * curvature;
       }
     }
     for (Eigen::Index i = begin; i < begin + count; ++i) {

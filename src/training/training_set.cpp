@@ -19,6 +19,7 @@ Range range_of(const std::vector<CubicBasis::Weights>& weights) {
 
 std::vector<CubicBasis::Weights> basis_at(const CubicBasis& basis, const std::vector<double>& wavelength) {
   std::vector<CubicBasis::Weights> out;
+  out.reserve(wavelength.size());
   for (const double lambda : wavelength) out.push_back(basis.at(lambda));
   return out;
 }

@@ -36,6 +36,7 @@ int main(int argc, char** argv) {
   const std::vector<std::string> bands = {"blue", "green", "red", "dark"};
   std::mt19937_64 generator(1);
   std::vector<LightCurve> light_curves;
+  light_curves.reserve(20);
   for (int i = 0; i < 20; ++i) {
     light_curves.push_back(observe(truth, model, catalogue, bands, -12, 44, 4, 0.02, &generator));
   }

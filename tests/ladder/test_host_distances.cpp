@@ -37,7 +37,7 @@ std::filesystem::path covariance_fits(const testing::ScratchFolder& folder, cons
   FitsWriter writer;
   writer.add_image("covariance", {values.size() / hosts.size(), hosts.size()}, values, unit);
   writer.add_table(table, "hosts");
-  const auto path = folder.path() / "covariance.fits";
+  auto path = folder.path() / "covariance.fits";
   writer.write(path);
   return path;
 }

@@ -132,7 +132,7 @@ TEST_CASE("published samples: fits are trusted and agree with published shapes, 
   for (const auto& [sample, members] : all) {
     const auto good = trusted(members);
     INFO(sample << ": " << good.size() << " of " << members.size() << " trusted");
-    CHECK(good.size() > 0);
+    CHECK_FALSE(good.empty());
   }
   for (const std::string sample : {"csp", "foundation"}) {
     const auto good = trusted(all.at(sample));
@@ -141,6 +141,7 @@ TEST_CASE("published samples: fits are trusted and agree with published shapes, 
     CHECK(correlation(good, &LightCurveFit::c, &Row::colour) >= (sample == std::string("csp") ? 0.93 : 0.88));
     // The published dates of one sample may all be off by half a day: their median counts as none.
     std::vector<double> off;
+    off.reserve(good.size());
     for (const Row& row : good) off.push_back(row.fit.t_0 - row.peak_mjd);
     std::nth_element(off.begin(), off.begin() + static_cast<std::ptrdiff_t>(off.size() / 2), off.end());
     const double middle = off[off.size() / 2];

@@ -72,7 +72,7 @@ TEST_CASE("points and curves name their supernova and band") {
   CHECK(points.reals_in("model_flux", "Jy")[0] == Approx(fitted.fits[0].epochs[0].model_flux * 1e-6));
   const Table curves = curves_table(fitted.fits, fitted.light_curves);
   // Two supernovae, two bands, every day from -15 to 45.
-  CHECK(curves.rows() == 4 * 61);
+  CHECK(curves.rows() == std::size_t{4} * 61);
 }
 
 TEST_CASE("a broken covariance is refused") {

@@ -14,7 +14,7 @@ constexpr double c = 299792.458;
 
 VelocityCube radial_cube(int half, double step, const std::function<double(double)>& velocity_at) {
   VelocityCube cube;
-  const std::size_t n = static_cast<std::size_t>(2 * half + 1);
+  const std::size_t n = 2 * static_cast<std::size_t>(half) + 1;
   cube.size = {n, n, n};
   cube.first = {-half * step, -half * step, -half * step};
   cube.step = {step, step, step};

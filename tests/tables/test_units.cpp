@@ -97,5 +97,5 @@ TEST_CASE("units are spelled for FITS") {
   CHECK(fits_spelling("uJy") == "uJy");
   CHECK(fits_spelling("dex(solMass)") == "dex(solMass)");
   CHECK(fits_spelling("furlong") == "furlong");
-  CHECK(fits_spelling("") == "");
+  CHECK(fits_spelling("").empty());
 }

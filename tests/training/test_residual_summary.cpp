@@ -32,6 +32,7 @@ std::vector<HeldOutPoint> drawn(int supernovae, int epochs, double slope, unsign
 
 std::vector<const HeldOutPoint*> pointers(const std::vector<HeldOutPoint>& points) {
   std::vector<const HeldOutPoint*> out;
+  out.reserve(points.size());
   for (const HeldOutPoint& point : points) out.push_back(&point);
   return out;
 }
