@@ -25,7 +25,7 @@ NO_MATTER = {"data start late", "t_0 outside the data", "some epochs mistrusted"
 
 def fit(program, run_file, text):
     run_file.write_text(text)
-    subprocess.run([program, "fit", str(run_file)], check=True, stdout=subprocess.DEVNULL)
+    subprocess.run([program, "fit", "--afresh", str(run_file)], check=True, stdout=subprocess.DEVNULL)
     return Table.read(run_file.parent / run_file.stem / "lightcurve-fits.ecsv")
 
 
