@@ -90,11 +90,10 @@ std::string residual_text(std::span<const HeldOutPoint> points) {
   std::string out = fmt::format(
       "Every training supernova was fitted with a template trained without it and its fold: {} points of {} supernovae "
       "with a trusted fit. Offsets are weighted means of data − template, positive where the data are fainter; errors "
-      "treat the epochs of one supernova as one draw. χ² per degree of freedom is Σ pull² over Σ (1 − 4/n), n the "
-      "points of "
-      "the supernova; the width is half the range of the middle 68% of the pulls, blind to wild epochs. The fit of "
-      "m_B, s "
-      "and c takes a mean offset out of every supernova: what is left are differences between bands and phases.\n\n",
+      "treat the epochs of one supernova as one draw. χ² per degree of freedom is Σ pull² over what is "
+      "expected of it, which is less than one a point by what the fit of four parameters takes out there; the width is "
+      "half the range of the middle 68% of the pulls, blind to wild epochs. The fit of m_B, s and c takes a mean "
+      "offset out of every supernova: what is left are differences between bands and phases.\n\n",
       points.size(), supernovae.size());
   out += figure("residuals",
                 "Held-out residuals by passband, phase and redshift; grey: χ² per degree of freedom 1 ± 0.1.");
