@@ -77,9 +77,6 @@ bool is_apart(const Solution& a, const Solution& b, double z) {
 
 void describe_epochs(const Problem& problem, const LightCurve& light_curve, const Solution& solution,
                      LightCurveFit& fit) {
-  Eigen::VectorXd flux;
-  FluxSlopes slopes;
-  model_flux(problem.observed, solution.selection, solution.at, flux, slopes);
   for (std::size_t k = 0; k < solution.selection.size(); ++k) {
     const Observation& observation = problem.observed.observations[solution.selection[k]];
     const ObservedBand& band = problem.observed.bands[observation.band];
@@ -94,7 +91,7 @@ void describe_epochs(const Problem& problem, const LightCurve& light_curve, cons
     const double variance = observation.variance + out.model_error * out.model_error;
     out.pull = (observation.flux - out.model_flux) / std::sqrt(variance);
     // Residuals of a least-squares fit have the covariance C − J (J^T C^−1 J)^−1 J^T.
-    const Eigen::Vector4d by_parameters = slopes.row(static_cast<Eigen::Index>(k));
+    const Eigen::Vector4d by_parameters = solution.slopes.row(static_cast<Eigen::Index>(k));
     out.freedom = std::max(0.0, 1 - by_parameters.dot(solution.covariance * by_parameters) / variance);
     if (!solution.weights.empty()) out.weight = solution.weights[k];
     out.mistrusted = out.weight < problem.options.mistrust_below;

@@ -161,8 +161,7 @@ Solution solve(const Problem& problem, const Parameters& start, Selection select
   out.selection = std::move(selection);
   hold_undetermined(problem, out);
   Residuals residuals(problem, out);
-  FluxSlopes slopes;
-  model_flux(problem.observed, out.selection, out.at, out.flux, slopes);
+  model_flux(problem.observed, out.selection, out.at, out.flux, out.slopes);
   Noise noise(problem.observed, out.selection, problem.model, out.at, out.flux, out.weights, options.template_scatter);
   ceres::TinySolver<Residuals> solver;
   solver.options.function_tolerance = 1e-9;
@@ -178,13 +177,13 @@ Solution solve(const Problem& problem, const Parameters& start, Selection select
     const Parameters before = out.at;
     const Parameters proposed = residuals.bounded(y.data());
     out.at = before + relaxation(out.iterations) * (proposed - before);
-    model_flux(problem.observed, out.selection, out.at, out.flux, slopes);
+    model_flux(problem.observed, out.selection, out.at, out.flux, out.slopes);
     if (options.robust) {
       out.weights = cauchy_weights(noise.own_pulls(residuals.data() - out.flux), options.robust_scale);
     }
     noise =
         Noise(problem.observed, out.selection, problem.model, out.at, out.flux, out.weights, options.template_scatter);
-    out.covariance = covariance_of(out, noise, slopes);
+    out.covariance = covariance_of(out, noise, out.slopes);
     out.converged = move_in_errors(before, proposed, out.covariance) < settled;
   }
   Eigen::VectorXd r = residuals.data() - out.flux;

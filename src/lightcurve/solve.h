@@ -22,6 +22,7 @@ struct Solution {
   Eigen::Matrix4d covariance = Eigen::Matrix4d::Zero();
   Selection selection;
   Eigen::VectorXd flux;          ///< Model flux of the selected observations [uJy].
+  FluxSlopes slopes;             ///< Its derivatives in the parameters.
   std::vector<double> weights;   ///< Of the robust loss; empty without it.
   double chi2 = 0;               ///< Of the data, without priors.
   std::optional<Prior> s_prior;  ///< As applied.

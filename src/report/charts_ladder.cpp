@@ -2,9 +2,6 @@
 // from.
 #include <fmt/format.h>
 
-#include <algorithm>
-#include <cmath>
-
 #include "report/bar_chart.h"
 #include "report/chart_spec.h"
 #include "report/digits.h"

@@ -1,7 +1,5 @@
 #include "training/calibration_response.h"
 
-#include <Eigen/Cholesky>
-#include <algorithm>
 #include <cmath>
 #include <set>
 #include <string>
@@ -86,10 +84,9 @@ std::vector<CalibrationResponse> calibration_responses(
     const PassbandCatalogue& catalogue, const std::optional<Spectrum>& standard_star, const Extinction& dust,
     const NormalEquations& system, const TrainerOptions& trainer, const ResponseOptions& options) {
   std::set<std::string> passbands(options.passbands.begin(), options.passbands.end());
-  const bool all = passbands.empty();
-  for (const TrainingSupernova& sn : supernovae) {
-    for (const TrainingBand& band : sn.bands) {
-      if (all) passbands.insert(band.passband);
+  if (passbands.empty()) {
+    for (const TrainingSupernova& sn : supernovae) {
+      for (const TrainingBand& band : sn.bands) passbands.insert(band.passband);
     }
   }
   const CoefficientLayout layout(state.model);
