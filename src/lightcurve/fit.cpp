@@ -154,6 +154,7 @@ void remark_on(const Problem& problem, const Solution& solution, bool reselected
   add_if(fit.fit_probability < options.improbable && fit.chi2 > options.impossible_chi2_per_dof * fit.dof,
          Remark::improbable);
   add_if(fit.first_phase > 0 || fit.last_phase < 0, Remark::t_0_outside_data);
+  add_if(fit.mistrusted_epochs() > options.most_mistrusted * fit.epochs_used, Remark::many_mistrusted);
   add_if(fit.mistrusted_epochs() > 0, Remark::epochs_mistrusted);
   add_if(!fit.bands_left_out.empty(), Remark::bands_left_out);
   add_if(reselected, Remark::epochs_reselected);
@@ -169,7 +170,7 @@ void fill(const Problem& problem, const LightCurve& light_curve, const PreparedT
   fit.covariance = best.covariance;
   fit.chi2 = best.chi2;
   fit.epochs_used = static_cast<int>(best.selection.size());
-  fit.dof = std::max(0, fit.epochs_used - 4);
+  fit.dof = std::max(0, static_cast<int>(best.counted) - 4);
   fit.fit_probability = chi_square_survival(fit.chi2, fit.dof);
   fit.dm15_b = prepared.dm15_b(fit.s, fit.c);
   fit.iterations = best.iterations;

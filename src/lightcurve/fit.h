@@ -31,7 +31,8 @@ struct FitOptions {
   bool template_scatter = true;  ///< Count the template's ε and κ among the errors.
   bool robust = false;           ///< Cauchy loss on single epochs, see fit_light_curve.
   double robust_scale = 3;       ///< Pull at which an epoch's weight is one half.
-  double mistrust_below = 0.3;   ///< Weight below which an epoch is called mistrusted.
+  double mistrust_below = 0.3;   ///< Weight below which an epoch is called mistrusted, and left out of χ².
+  double most_mistrusted = 0.2;  ///< Of the epochs; beyond it the fit is not trusted.
 
   double s_min = 0.4, s_max = 1.7;
   double c_min = -0.6, c_max = 1.2;  ///< [mag]

@@ -32,6 +32,8 @@ std::string text_of(Remark remark) {
       return "data start late";
     case Remark::improbable:
       return "chi2 too large to be chance";
+    case Remark::many_mistrusted:
+      return "many epochs mistrusted";
     case Remark::t_0_outside_data:
       return "t_0 outside the data";
     case Remark::epochs_mistrusted:

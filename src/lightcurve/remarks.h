@@ -21,6 +21,7 @@ enum class Remark {
   weakly_determined,   ///< An error is too large for a Gaussian to describe it.
   starts_late,         ///< Data that start late do not tell t_0 well.
   improbable,          ///< χ² is too large to be chance.
+  many_mistrusted,     ///< The robust loss had to dismiss a good part of the epochs.
   t_0_outside_data,    ///< All epochs used are on one side of t_0.
   epochs_mistrusted,   ///< The robust loss gave some epochs little weight.
   bands_left_out,      ///< Some bands reach outside the template.

@@ -152,6 +152,26 @@ std::vector<double> cauchy_weights(const std::vector<double>& pulls, double scal
   return out;
 }
 
+/// χ² of what the robust loss leaves in good standing, each epoch counted in full: weighted down, a template that fits
+/// nowhere would look as good as one that fits.
+void judge(const Problem& problem, const Eigen::VectorXd& data, Solution& out) {
+  Selection kept;
+  std::vector<double> model, left;
+  for (std::size_t k = 0; k < out.selection.size(); ++k) {
+    if (!out.weights.empty() && out.weights[k] < problem.options.mistrust_below) continue;
+    const auto i = static_cast<Eigen::Index>(k);
+    kept.push_back(out.selection[k]);
+    model.push_back(out.flux[i]);
+    left.push_back(data[i] - out.flux[i]);
+  }
+  const auto count = static_cast<Eigen::Index>(kept.size());
+  const Eigen::VectorXd flux = Eigen::Map<const Eigen::VectorXd>(model.data(), count);
+  Eigen::VectorXd r = Eigen::Map<const Eigen::VectorXd>(left.data(), count);
+  Noise(problem.observed, kept, problem.model, out.at, flux, {}, problem.options.template_scatter).whiten(r);
+  out.chi2 = r.squaredNorm();
+  out.counted = kept.size();
+}
+
 }  // namespace
 
 Solution solve(const Problem& problem, const Parameters& start, Selection selection) {
@@ -186,9 +206,14 @@ Solution solve(const Problem& problem, const Parameters& start, Selection select
     out.covariance = covariance_of(out, noise, out.slopes);
     out.converged = move_in_errors(before, proposed, out.covariance) < settled;
   }
-  Eigen::VectorXd r = residuals.data() - out.flux;
-  noise.whiten(r);
-  out.chi2 = r.squaredNorm();
+  if (out.weights.empty()) {
+    Eigen::VectorXd r = residuals.data() - out.flux;
+    noise.whiten(r);
+    out.chi2 = r.squaredNorm();
+    out.counted = out.selection.size();
+  } else {
+    judge(problem, residuals.data(), out);
+  }
   out.converged = out.converged && std::isfinite(out.chi2) && out.covariance.allFinite();
   return out;
 }

@@ -24,7 +24,8 @@ struct Solution {
   Eigen::VectorXd flux;          ///< Model flux of the selected observations [uJy].
   FluxSlopes slopes;             ///< Its derivatives in the parameters.
   std::vector<double> weights;   ///< Of the robust loss; empty without it.
-  double chi2 = 0;               ///< Of the data, without priors.
+  double chi2 = 0;               ///< Of the data, without priors; of epochs in good standing, each in full.
+  std::size_t counted = 0;       ///< Epochs in chi2.
   std::optional<Prior> s_prior;  ///< As applied.
   std::optional<Prior> c_prior;
   int bands = 0;  ///< Bands with a selected observation.

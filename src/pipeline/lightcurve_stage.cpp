@@ -13,6 +13,8 @@
 #include "pipeline/inputs.h"
 #include "pipeline/table_tools.h"
 #include "tables/fits_image.h"
+#include "training/fitted_set.h"
+#include "training/training_tables.h"
 
 namespace thirdrung {
 
@@ -102,6 +104,17 @@ Table all_set_aside(const Bench& bench, const Table& from_fits) {
   return rows_of(table, keep);
 }
 
+/// With priors of s and c too wide to count, as the fits have none.
+Table error_factors_of(const Bench& bench, const SpectralTemplate& model, const Table& fits, int threads) {
+  constexpr UnknownsPrior wide{1, 100, 0, 100};
+  std::vector<LightCurveFit> rows;
+  for (FittedSupernova& one : read_fits(fits)) rows.push_back(std::move(one.fit));
+  const FittedSet set = fitted_set(bench.photometry.light_curves, bench.supernovae.supernovae, rows, model,
+                                   bench.catalogue, bench.dust, {bench.options.phase_min, bench.options.phase_max});
+  return error_factors_table(
+      error_factors(model, set.supernovae, set.unknowns, wide, TemplateScatter::held, {}, threads));
+}
+
 }  // namespace
 
 LightCurveTables fit_light_curves(const RunFile& run, const fs::path& chunks, const std::string& key) {
@@ -132,7 +145,7 @@ LightCurveTables fit_light_curves(const RunFile& run, const fs::path& chunks, co
     }
     for (std::size_t k = 0; k < parts.size(); ++k) collected[k].push_back(std::move((*tables)[k]));
   }
-  LightCurveTables out{stacked(collected[0]), stacked(collected[1]), stacked(collected[2]), {}};
+  LightCurveTables out{stacked(collected[0]), stacked(collected[1]), stacked(collected[2]), {}, {}};
   out.set_aside = all_set_aside(bench, stacked(collected[3]));
   if (out.fits.rows() == 0) {
     throw NoResultError(fmt::format("Not one of {} light curves could be fitted{}.", total,
@@ -141,6 +154,7 @@ LightCurveTables fit_light_curves(const RunFile& run, const fs::path& chunks, co
                                         : fmt::format("; the first: {}: {}", out.set_aside.strings("supernova").front(),
                                                       out.set_aside.strings("reason").front())));
   }
+  out.error_factors = error_factors_of(bench, trained.model, out.fits, run.threads);
   return out;
 }
 

@@ -10,10 +10,11 @@ namespace thirdrung {
 
 /// What the light-curve stage leaves.
 struct LightCurveTables {
-  Table fits;       ///< lightcurve-fits
-  Table points;     ///< lightcurve-points
-  Table curves;     ///< lightcurve-curves
-  Table set_aside;  ///< set-aside: supernovae that could not be fitted or read, with the reason.
+  Table fits;           ///< lightcurve-fits
+  Table points;         ///< lightcurve-points
+  Table curves;         ///< lightcurve-curves
+  Table set_aside;      ///< set-aside: supernovae that could not be fitted or read, with the reason.
+  Table error_factors;  ///< error-factors: what each passband's errors would have to be multiplied by.
 };
 
 /// Light curves fitted in one go before they are saved.

@@ -135,6 +135,7 @@ void read_survey_section(RunSection section, RunFile& run) {
   survey.name = section.text("name");
   survey.photometry = section.path("photometry");
   survey.supernovae = section.path("supernovae");
+  survey.error_scale = read_error_scale(section);
   section.done();
   for (const SurveyInput& other : run.surveys) {
     if (other.name == survey.name) {

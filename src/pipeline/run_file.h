@@ -11,6 +11,7 @@
 #include "hubbleflow/scans.h"
 #include "light/dust_law.h"
 #include "lightcurve/fit.h"
+#include "pipeline/error_scale.h"
 #include "pipeline/input_file.h"
 #include "sample/quality_cuts.h"
 #include "sample/redshift_frames.h"
@@ -26,6 +27,7 @@ struct SurveyInput {
   std::string name;
   InputFile photometry;  ///< A table, or a folder of tables.
   InputFile supernovae;
+  ErrorScale error_scale;
 };
 
 /// [milky_way]: dust between us and the supernovae.

@@ -83,6 +83,7 @@ void read_lightcurve_section(RunSection section, RunFile& run) {
   fit.robust = section.flag("robust", fit.robust);
   fit.robust_scale = section.number_between("robust_scale", fit.robust_scale, 0.5, 100);
   fit.mistrust_below = section.number_between("mistrust_below", fit.mistrust_below, 0, 1);
+  fit.most_mistrusted = section.number_between("most_mistrusted", fit.most_mistrusted, 0, 1);
   fit.s_min = section.number_between("s_min", fit.s_min, 0.1, 1);
   fit.s_max = section.number_between("s_max", fit.s_max, 1, 3);
   fit.c_min = section.number_between("c_min", fit.c_min, -5, 0);

@@ -76,6 +76,10 @@ bool RunSection::is_list(const std::string& key) const {
   return has(key) && keys_->get(key)->is_array();
 }
 
+bool RunSection::is_table(const std::string& key) const {
+  return has(key) && keys_->get(key)->is_table();
+}
+
 const toml::node* RunSection::find(const std::string& key) {
   known_.insert(key);
   return keys_ == nullptr ? nullptr : keys_->get(key);

@@ -32,6 +32,7 @@ class RunSection {
   bool has(const std::string& key) const;
   bool is_flag(const std::string& key) const;
   bool is_list(const std::string& key) const;
+  bool is_table(const std::string& key) const;
   const std::string& name() const { return name_; }
 
   std::string text(const std::string& key);

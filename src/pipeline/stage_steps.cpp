@@ -94,6 +94,7 @@ StageStep light_curves_step() {
     if (tables.points.rows() > 0) write_result(context, tables.points, "lightcurve-points", files);
     if (tables.curves.rows() > 0) write_result(context, tables.curves, "lightcurve-curves", files);
     write_result(context, tables.set_aside, "set-aside", files);
+    write_result(context, tables.error_factors, "error-factors", files);
     return files;
   };
   step.clean_up = [](const StageContext& context) { remove_chunks(context.folder.resume_folder()); };

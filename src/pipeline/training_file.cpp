@@ -102,7 +102,7 @@ void read_surveys(const toml::table& root, const std::string& file, TrainingFile
     if (!node.is_table()) throw InputError({file, {}, "survey"}, "is not a list of sections", "write [[survey]]");
     RunSection section(*node.as_table(), file, "[[survey]]");
     TrainingFile::Survey survey{section.text("name"), section.path("photometry"), section.path("supernovae"),
-                                section.flag("check", false)};
+                                section.flag("check", false), read_error_scale(section)};
     section.done();
     out.surveys.push_back(std::move(survey));
   }
@@ -115,6 +115,7 @@ std::vector<TrainingCandidate> read_candidates(const TrainingFile& file, bool ch
     if (survey.check != check) continue;
     SupernovaList list = read_supernovae(read_table(survey.supernovae.path), survey.name);
     Photometry photometry = read_photometry(survey.photometry.path, catalogue, survey.name);
+    survey.error_scale.apply(photometry.light_curves);
     set_aside.insert(set_aside.end(), list.set_aside.begin(), list.set_aside.end());
     set_aside.insert(set_aside.end(), photometry.set_aside.begin(), photometry.set_aside.end());
     for (LightCurve& light_curve : photometry.light_curves) {
@@ -242,7 +243,9 @@ TrainingResult train_from_file(const TrainingFile& file, const TrainingOutput& o
   write_table(left_out_table(result), output.folder / "left-out.ecsv");
   write_table(cross_validation_table(result), output.folder / "cross-validation.ecsv");
   write_table(offsets_table(result.offsets), output.folder / "zero-point-offsets.ecsv");
+  write_table(error_factors_table(result.error_factors), output.folder / "error-factors.ecsv");
   if (!result.check.offsets.empty()) {
+    write_table(error_factors_table(result.check.error_factors), output.folder / "check-error-factors.ecsv");
     write_table(offsets_table(result.check.offsets), output.folder / "check-zero-point-offsets.ecsv");
     write_table(fits_table(result.check.as_given.fits), output.folder / "check-fits.ecsv");
     write_table(fits_table(result.check.with_offsets.fits), output.folder / "check-fits-with-offsets.ecsv");

@@ -4,6 +4,7 @@
 #include <string>
 #include <vector>
 
+#include "pipeline/error_scale.h"
 #include "pipeline/input_file.h"
 #include "training/run_training.h"
 
@@ -15,6 +16,7 @@ struct TrainingFile {
     std::string name;
     InputFile photometry, supernovae;
     bool check = false;  ///< Not trained on; fitted with the finished template.
+    ErrorScale error_scale;
   };
   std::filesystem::path path;
   std::string content;  ///< As read, for the provenance.

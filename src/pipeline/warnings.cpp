@@ -1,6 +1,8 @@
 #include <fmt/format.h>
 
+#include <algorithm>
 #include <cmath>
+#include <cstdint>
 #include <set>
 
 #include "base/text.h"
@@ -17,6 +19,8 @@ namespace {
 
 /// Below so many supernovae the error of a_b itself is poorly known.
 constexpr double few_supernovae = 30;
+/// Of fewer the scatter is not known.
+constexpr std::int64_t supernovae_for_errors = 10;
 /// A chi-square less probable than this, either way, is not chance.
 constexpr double improbable = 0.001;
 
@@ -51,6 +55,30 @@ void of_fits(const fs::path& folder, std::vector<std::string>& out) {
   if (with_left_out > 0)
     out.push_back(fmt::format("{} had passbands left out, mostly for reaching beyond the template.",
                               counted(with_left_out, "supernova", "supernovae")));
+}
+
+/// Errors of passbands that the scatter of their own epochs contradicts.
+void of_errors(const fs::path& folder, std::vector<std::string>& out) {
+  const auto table = result(folder, "error-factors");
+  if (!table) return;
+  const auto survey = table->strings("survey"), passband = table->strings("passband");
+  const auto factor = table->reals("error_factor"), error = table->reals("error_factor_error");
+  const auto supernovae = table->integers("supernovae");
+  std::vector<std::size_t> wrong;
+  for (std::size_t i = 0; i < factor.size(); ++i) {
+    if (supernovae[i] >= supernovae_for_errors && std::abs(factor[i] - 1) > std::max(0.1, 3 * error[i]))
+      wrong.push_back(i);
+  }
+  if (wrong.empty()) return;
+  const auto most = *std::max_element(wrong.begin(), wrong.end(), [&](std::size_t a, std::size_t b) {
+    return std::abs(std::log(factor[a])) < std::abs(std::log(factor[b]));
+  });
+  out.push_back(fmt::format(
+      "Measured errors of {} do not agree with the scatter of their epochs (the most: {} {}, too {} by a factor of "
+      "{:.2f} ± {:.2f}); error-factors.ecsv has what error_scale of [[survey]] would be.",
+      counted(wrong.size(), "passband", "passbands"), survey[most], passband[most],
+      factor[most] > 1 ? "small" : "large", factor[most] > 1 ? factor[most] : 1 / factor[most],
+      factor[most] > 1 ? error[most] : error[most] / (factor[most] * factor[most])));
 }
 
 void of_sample(const fs::path& folder, std::vector<std::string>& out) {
@@ -155,6 +183,7 @@ std::vector<std::string> run_warnings(const RunFile& run, const fs::path& folder
   std::vector<std::string> out;
   of_intercept(folder, out);
   of_fits(folder, out);
+  of_errors(folder, out);
   of_sample(folder, out);
   of_standardisation(folder, out);
   of_calibrators(folder, out);

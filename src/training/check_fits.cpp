@@ -2,49 +2,56 @@
 #include <map>
 
 #include "base/parallel.h"
+#include "training/fitted_set.h"
 #include "training/run_training.h"
 
 namespace thirdrung {
 
 namespace {
 
-/// Offsets from the fits of a sound χ² alone: a peculiar supernova says nothing of a zero point.
-std::vector<ZeroPointOffset> offsets_of(std::span<const TrainingCandidate> candidates, const LightCurveFits& fits,
-                                        const SpectralTemplate& model, const PassbandCatalogue& catalogue,
-                                        const Extinction& dust, const TrainingSetup& setup) {
-  std::map<std::pair<std::string, std::string>, const LightCurveFit*> fit_of;
-  for (const LightCurveFit& fit : fits.fits) fit_of[{fit.survey, fit.supernova}] = &fit;
-  std::vector<TrainingSupernova> supernovae;
-  std::vector<SupernovaUnknowns> unknowns;
-  std::vector<Eigen::VectorXd> weights;
-  for (const TrainingCandidate& candidate : candidates) {
-    const auto found = fit_of.find({candidate.supernova.survey, candidate.supernova.name});
-    if (found == fit_of.end() || !std::isfinite(found->second->t_0)) continue;
-    const LightCurveFit& fit = *found->second;
-    if (fit.chi2 > setup.cuts.most_chi2_per_dof * std::max(1, fit.dof)) continue;
-    TrainingSupernova sn = prepare_supernova(candidate.light_curve, candidate.supernova, fit.t_0, model, catalogue,
-                                             dust, {setup.cuts.earliest, setup.cuts.latest});
-    if (sn.epochs.size() < 5) continue;
-    SupernovaUnknowns at{fit.t_0, fit.m_b, fit.s, fit.c};
-    Eigen::VectorXd weight = robust_weights_of(model, sn, at, setup.trainer.robust_degrees);
-    supernovae.push_back(std::move(sn));
-    unknowns.push_back(at);
-    weights.push_back(std::move(weight));
+/// Candidates in the form that the fits take.
+struct Inputs {
+  std::vector<LightCurve> light_curves;
+  std::vector<Supernova> supernovae;
+
+  explicit Inputs(std::span<const TrainingCandidate> candidates) {
+    for (const TrainingCandidate& candidate : candidates) {
+      light_curves.push_back(candidate.light_curve);
+      supernovae.push_back(candidate.supernova);
+    }
   }
-  return zero_point_offsets(model, supernovae, unknowns, weights, setup.trainer.prior, 0.1, setup.trainer.threads);
+};
+
+LightCurveFits fit_inputs(const Inputs& inputs, const SpectralTemplate& model, const PassbandCatalogue& catalogue,
+                          const Extinction& dust, const TrainingSetup& setup) {
+  return fit_all(inputs.light_curves, inputs.supernovae, PreparedTemplate(model), catalogue, dust, setup.fit,
+                 setup.trainer.threads);
+}
+
+/// Error of a zero point that the catalogue does not state; common practice, no source.
+constexpr double usual_zero_point_error = 0.02;
+
+/// Within the errors of the zero points, and with priors of s and c too wide to count: what the light curves cannot
+/// tell from stretches and colours of their own stays zero, instead of bringing every survey to the colour of the
+/// training set.
+std::vector<ZeroPointOffset> offsets_of(const FittedSet& set, const SpectralTemplate& model,
+                                        const PassbandCatalogue& catalogue, const TrainerOptions& options) {
+  constexpr UnknownsPrior wide{1, 100, 0, 100};
+  std::vector<Eigen::VectorXd> weights;
+  for (std::size_t k = 0; k < set.supernovae.size(); ++k)
+    weights.push_back(robust_weights_of(model, set.supernovae[k], set.unknowns[k], options.robust_degrees));
+  const auto width = [&](const std::string& passband) {
+    const double stated = catalogue.at(passband).zero_point_error;
+    return stated > 0 ? stated : usual_zero_point_error;
+  };
+  return zero_point_offsets(model, set.supernovae, set.unknowns, weights, wide, width, options.threads);
 }
 
 }  // namespace
 
 LightCurveFits fit_candidates(std::span<const TrainingCandidate> candidates, const SpectralTemplate& model,
                               const PassbandCatalogue& catalogue, const Extinction& dust, const TrainingSetup& setup) {
-  std::vector<LightCurve> light_curves;
-  std::vector<Supernova> supernovae;
-  for (const TrainingCandidate& candidate : candidates) {
-    light_curves.push_back(candidate.light_curve);
-    supernovae.push_back(candidate.supernova);
-  }
-  return fit_all(light_curves, supernovae, PreparedTemplate(model), catalogue, dust, setup.fit, setup.trainer.threads);
+  return fit_inputs(Inputs(candidates), model, catalogue, dust, setup);
 }
 
 CheckFits check_on_other_surveys(std::span<const TrainingCandidate> candidates, const SpectralTemplate& model,
@@ -52,22 +59,29 @@ CheckFits check_on_other_surveys(std::span<const TrainingCandidate> candidates, 
                                  const TrainingSetup& setup) {
   CheckFits out;
   if (candidates.empty()) return out;
-  out.as_given = fit_candidates(candidates, model, catalogue, dust, setup);
-  out.offsets = offsets_of(candidates, out.as_given, model, catalogue, dust, setup);
+  Inputs inputs(candidates);
+  const auto set_of = [&](const LightCurveFits& fits) {
+    return fitted_set(inputs.light_curves, inputs.supernovae, fits.fits, model, catalogue, dust,
+                      {setup.cuts.earliest, setup.cuts.latest});
+  };
+  out.as_given = fit_inputs(inputs, model, catalogue, dust, setup);
+  out.offsets = offsets_of(set_of(out.as_given), model, catalogue, setup.trainer);
   std::map<std::pair<std::string, std::string>, double> factor;
   for (const ZeroPointOffset& offset : out.offsets) {
     factor[{offset.survey, offset.passband}] = std::pow(10.0, -0.4 * offset.offset);
   }
-  std::vector<TrainingCandidate> moved(candidates.begin(), candidates.end());
-  for (TrainingCandidate& candidate : moved) {
-    for (Epoch& epoch : candidate.light_curve.epochs) {
-      const auto found = factor.find({candidate.light_curve.survey, candidate.light_curve.passbands[epoch.passband]});
+  for (LightCurve& light_curve : inputs.light_curves) {
+    for (Epoch& epoch : light_curve.epochs) {
+      const auto found = factor.find({light_curve.survey, light_curve.passbands[epoch.passband]});
       if (found == factor.end()) continue;
       epoch.flux *= found->second;
       epoch.flux_error *= found->second;
     }
   }
-  out.with_offsets = fit_candidates(moved, model, catalogue, dust, setup);
+  out.with_offsets = fit_inputs(inputs, model, catalogue, dust, setup);
+  const FittedSet set = set_of(out.with_offsets);
+  out.error_factors = error_factors(model, set.supernovae, set.unknowns, setup.trainer.prior, TemplateScatter::held,
+                                    setup.trainer.scatter, setup.trainer.threads);
   return out;
 }
 

@@ -160,8 +160,11 @@ TrainingResult run_training(std::span<const TrainingCandidate> candidates, std::
                                                    catalogue, standard_star, dust, system, options);
   result.trained.covariance_modes = std::move(uncertainty.modes);
   result.covariance = std::move(uncertainty.covariance);
-  result.offsets = zero_point_offsets(result.state.model, supernovae, result.state.unknowns,
-                                      result.state.robust_weights, options.prior, 0.1, options.threads);
+  result.offsets = zero_point_offsets(
+      result.state.model, supernovae, result.state.unknowns, result.state.robust_weights, options.prior,
+      [](const std::string&) { return 0.1; }, options.threads);
+  result.error_factors = error_factors(result.state.model, supernovae, result.state.unknowns, options.prior,
+                                       TemplateScatter::estimated_along, options.scatter, options.threads);
   if (setup.out_of_fold) fit_out_of_fold(result, candidates, catalogue, dust, setup, options);
   result.trained.model = result.state.model;
   result.trained.model.name = setup.name;

@@ -33,7 +33,8 @@ struct TrainingSetup {
 
 /// Supernovae of surveys that had no part in the training, fitted with the finished template.
 struct CheckFits {
-  std::vector<ZeroPointOffset> offsets;  ///< That their light curves prefer.
+  std::vector<ZeroPointOffset> offsets;    ///< That their light curves prefer.
+  std::vector<ErrorFactor> error_factors;  ///< That they prefer after those offsets, the template's scatter held.
   LightCurveFits as_given;
   LightCurveFits with_offsets;  ///< After those offsets have been added to their magnitudes.
 };
@@ -48,8 +49,9 @@ struct TrainingResult {
   std::vector<std::string> spectra_left_out;  ///< "reason: count".
   TrainingPopulation population;              ///< At the optimum.
   CrossValidationResult cross_validation;
-  Eigen::MatrixXd covariance;            ///< Of all coefficients.
-  std::vector<ZeroPointOffset> offsets;  ///< That the data would prefer.
+  Eigen::MatrixXd covariance;              ///< Of all coefficients.
+  std::vector<ZeroPointOffset> offsets;    ///< That the data would prefer.
+  std::vector<ErrorFactor> error_factors;  ///< On the errors as given, that the data would prefer.
   LightCurveFits out_of_fold;  ///< Of all candidates; those outside the training set were never seen by any template.
   std::vector<SpectralTemplate> fold_templates;
   CheckFits check;

@@ -2,6 +2,7 @@
 
 #include <Eigen/Core>
 #include <span>
+#include <string>
 #include <vector>
 
 #include "training/normal_equations.h"
@@ -12,16 +13,31 @@ namespace thirdrung {
 struct ScatterOptions {
   double neighbour_width = 0.7;  ///< Of the difference of neighbouring nodes' logarithms.
   double level_width = 1.5;      ///< About ln 0.04 (ε) and ln 0.03 (κ).
+  double factor_width = 0.5;     ///< Of the logarithm of a factor on measured errors, about 0.
   int iterations = 40;
 };
 
-/// Estimates ε and κ by restricted maximum likelihood: each supernova's four unknowns are integrated out along the
-/// linear model, so that the freedom they take from the residuals is paid for (Patterson & Thompson 1971, Biometrika
-/// 58, 545).
+/// Estimates ε and κ by restricted maximum likelihood (scatter_likelihood.h), measured errors as they are.
 ///
 /// Changes the scatter of `model`; leaves everything else. Returns the restricted log-likelihood reached.
 double fit_scatter(SpectralTemplate& model, std::span<const TrainingSupernova> supernovae,
-                   std::span<const SupernovaUnknowns> unknowns, std::span<const Eigen::VectorXd> robust_weights,
-                   const UnknownsPrior& prior, const ScatterOptions& options, int threads);
+                   std::span<const SupernovaUnknowns> unknowns, const UnknownsPrior& prior,
+                   const ScatterOptions& options, int threads);
+
+/// Factor that the measured errors of one passband of one survey should be multiplied by.
+struct ErrorFactor {
+  std::string survey, passband;
+  double factor = 1, error = 0;  ///< 1σ, the others free.
+  int supernovae = 0, epochs = 0;
+};
+
+/// What to do about the template's own scatter while the factors are estimated.
+enum class TemplateScatter { estimated_along, held };
+
+/// Factors on the measured errors of all passbands, by the same likelihood: what a survey's errors leave out (or count
+/// twice) shows in the epochs whose measured error exceeds the template's scatter.
+std::vector<ErrorFactor> error_factors(const SpectralTemplate& model, std::span<const TrainingSupernova> supernovae,
+                                       std::span<const SupernovaUnknowns> unknowns, const UnknownsPrior& prior,
+                                       TemplateScatter scatter, const ScatterOptions& options, int threads);
 
 }  // namespace thirdrung

@@ -340,14 +340,8 @@ void train(TrainingState& state, std::span<const TrainingSupernova> supernovae, 
   }
   for (int round = 0; round < options.scatter_rounds; ++round) {
     iterate(state, supernovae, options);
-    // Every epoch counts in full here: a scatter that left out the tails would make ordinary supernovae look
-    // impossible.
-    std::vector<Eigen::VectorXd> full_weights;
-    for (const TrainingSupernova& sn : supernovae) {
-      full_weights.push_back(Eigen::VectorXd::Ones(static_cast<Eigen::Index>(sn.epochs.size())));
-    }
-    const double likelihood = fit_scatter(state.model, supernovae, state.unknowns, full_weights, options.prior,
-                                          options.scatter, options.threads);
+    const double likelihood =
+        fit_scatter(state.model, supernovae, state.unknowns, options.prior, options.scatter, options.threads);
     if (!state.spectra.empty()) state.spectra_scatter = spectra_scatter(state.model, state.spectra);
     state.log.push_back(fmt::format("round {}: restricted log-likelihood {:.2f}, spectra scatter {:.4f}", round + 1,
                                     likelihood, state.spectra_scatter));

@@ -144,6 +144,20 @@ std::string offsets_text(std::span<const ZeroPointOffset> offsets) {
   return out + (beyond.empty() ? "\nNone is beyond 3 σ.\n\n" : fmt::format("\n**Beyond 3 σ: {}.**\n\n", beyond));
 }
 
+/// @param advice what to do about a factor that is far from one.
+std::string error_factors_text(std::span<const ErrorFactor> factors, const std::string& advice) {
+  std::string out = "| survey | passband | factor | supernovae | epochs |\n|---|---|---:|---:|---:|\n";
+  std::string beyond;
+  for (const ErrorFactor& f : factors) {
+    out += fmt::format("| {} | {} | {:.2f} ± {:.2f} | {} | {} |\n", f.survey, f.passband, f.factor, f.error,
+                       f.supernovae, f.epochs);
+    if (std::abs(f.factor - 1) > std::max(0.1, 3 * f.error))
+      beyond += fmt::format("{}{} {}", beyond.empty() ? "" : ", ", f.survey, f.passband);
+  }
+  return out + (beyond.empty() ? "\nNone is off 1 by more than a tenth and 3 σ.\n\n"
+                               : fmt::format("\n**Off 1 by more than a tenth and 3 σ: {}.** {}\n\n", beyond, advice));
+}
+
 double median_of(std::vector<double> values) {
   if (values.empty()) return 0;
   std::sort(values.begin(), values.end());
@@ -181,7 +195,8 @@ std::string check_text(const CheckFits& check) {
     out += fmt::format("| {} | {} | {:+.1f} ± {:.1f} | {} |\n", o.survey, o.passband, 1e3 * o.offset, 1e3 * o.error,
                        o.supernovae);
   }
-  return out + "\n";
+  out += "\nFactors on the measured errors that would suit best after that, the template's scatter held:\n\n";
+  return out + error_factors_text(check.error_factors, "Their `error_scale` in a run file would be this factor.");
 }
 
 /// A reason without its figures, so that like reasons are counted together.
@@ -245,6 +260,15 @@ std::string training_report_text(const TrainingResult& result, std::span<const L
                   "smoothing. Blue: an improvement of more than 0.5 when tried; grey: not; dashed: chosen.");
   }
   if (!result.offsets.empty()) out += "## Zero points\n\n" + offsets_text(result.offsets);
+  if (!result.error_factors.empty()) {
+    out += "## Measured errors\n\n";
+    out +=
+        "Factor that the measured errors, as they came in, should be multiplied by: by restricted maximum likelihood "
+        "together with ε and κ, all passbands at once. Errors that leave something out show in epochs of which the "
+        "measured error exceeds the template's own scatter.\n\n";
+    out += error_factors_text(result.error_factors,
+                              "Multiply the survey's `error_scale` in the training file by it, and train again.");
+  }
   if (!result.check.as_given.fits.empty()) out += "## Surveys not trained on\n\n" + check_text(result.check);
   out += "## Left out\n\n" + left_out_text(result.selection.left_out);
   if (!result.spectra_left_out.empty()) {

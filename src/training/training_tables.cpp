@@ -78,4 +78,17 @@ Table offsets_table(const std::vector<ZeroPointOffset>& rows) {
   return table;
 }
 
+Table error_factors_table(const std::vector<ErrorFactor>& rows) {
+  Table table;
+  table.add_strings("survey", column_of(rows, [](const ErrorFactor& f) { return f.survey; }));
+  table.add_strings("passband", column_of(rows, [](const ErrorFactor& f) { return f.passband; }));
+  table.add_reals("error_factor", column_of(rows, [](const ErrorFactor& f) { return f.factor; }));
+  table.add_reals("error_factor_error", column_of(rows, [](const ErrorFactor& f) { return f.error; }));
+  table.add_integers("supernovae",
+                     column_of(rows, [](const ErrorFactor& f) { return static_cast<std::int64_t>(f.supernovae); }));
+  table.add_integers("epochs",
+                     column_of(rows, [](const ErrorFactor& f) { return static_cast<std::int64_t>(f.epochs); }));
+  return table;
+}
+
 }  // namespace thirdrung

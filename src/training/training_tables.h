@@ -14,5 +14,8 @@ Table left_out_table(const TrainingResult& result);
 Table cross_validation_table(const TrainingResult& result);
 /// Zero-point offsets the data would prefer: survey, passband, offset (mag), offset_error (mag), supernovae.
 Table offsets_table(const std::vector<ZeroPointOffset>& rows);
+/// Factors on the measured errors that the data would prefer: survey, passband, error_factor, error_factor_error,
+/// supernovae, epochs.
+Table error_factors_table(const std::vector<ErrorFactor>& rows);
 
 }  // namespace thirdrung

@@ -49,11 +49,10 @@ BandSystem band_system(const SpectralTemplate& model, const TrainingSupernova& s
 
 }  // namespace
 
-std::vector<ZeroPointOffset> zero_point_offsets(const SpectralTemplate& model,
-                                                std::span<const TrainingSupernova> supernovae,
-                                                std::span<const SupernovaUnknowns> unknowns,
-                                                std::span<const Eigen::VectorXd> robust_weights,
-                                                const UnknownsPrior& prior, double prior_width, int threads) {
+std::vector<ZeroPointOffset> zero_point_offsets(
+    const SpectralTemplate& model, std::span<const TrainingSupernova> supernovae,
+    std::span<const SupernovaUnknowns> unknowns, std::span<const Eigen::VectorXd> robust_weights,
+    const UnknownsPrior& prior, const std::function<double(const std::string&)>& prior_width, int threads) {
   std::map<std::pair<std::string, std::string>, int> count;
   for (const TrainingSupernova& sn : supernovae) {
     for (const TrainingBand& band : sn.bands) ++count[{sn.survey, band.passband}];
@@ -69,7 +68,11 @@ std::vector<ZeroPointOffset> zero_point_offsets(const SpectralTemplate& model,
     systems[k] = band_system(model, supernovae[k], unknowns[k], robust_weights[k], prior);
   });
   const auto size = static_cast<Eigen::Index>(out.size());
-  Eigen::MatrixXd hessian = Eigen::MatrixXd::Identity(size, size) / (prior_width * prior_width);
+  Eigen::MatrixXd hessian = Eigen::MatrixXd::Zero(size, size);
+  for (Eigen::Index b = 0; b < size; ++b) {
+    const double width = prior_width(out[static_cast<std::size_t>(b)].passband);
+    hessian(b, b) = 1 / (width * width);
+  }
   Eigen::VectorXd gradient = Eigen::VectorXd::Zero(size);
   for (std::size_t k = 0; k < supernovae.size(); ++k) {
     const auto& bands = supernovae[k].bands;

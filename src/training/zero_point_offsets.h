@@ -1,5 +1,6 @@
 #pragma once
 
+#include <functional>
 #include <span>
 #include <string>
 #include <vector>
@@ -20,11 +21,10 @@ struct ZeroPointOffset {
 /// Offsets of all passbands together, with every supernova's own unknowns eliminated and the template held.
 ///
 /// A shift common to all passbands of a survey is taken up by m_B, and a trend with wavelength by c, so those
-/// directions are not determined: the prior of width `prior_width` [mag] about zero decides there.
-std::vector<ZeroPointOffset> zero_point_offsets(const SpectralTemplate& model,
-                                                std::span<const TrainingSupernova> supernovae,
-                                                std::span<const SupernovaUnknowns> unknowns,
-                                                std::span<const Eigen::VectorXd> robust_weights,
-                                                const UnknownsPrior& prior, double prior_width, int threads);
+/// directions are not determined: the prior about zero decides there, of width `prior_width` [mag] by passband.
+std::vector<ZeroPointOffset> zero_point_offsets(
+    const SpectralTemplate& model, std::span<const TrainingSupernova> supernovae,
+    std::span<const SupernovaUnknowns> unknowns, std::span<const Eigen::VectorXd> robust_weights,
+    const UnknownsPrior& prior, const std::function<double(const std::string&)>& prior_width, int threads);
 
 }  // namespace thirdrung

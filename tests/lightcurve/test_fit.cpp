@@ -193,7 +193,29 @@ TEST_CASE("the robust loss finds the epochs that do not belong") {
   CHECK(robust.epochs[20].mistrusted);
   CHECK(has(robust, Remark::epochs_mistrusted));
   CHECK(robust.trusted());
+  CHECK(robust.dof == robust.epochs_used - 2 - 4);
+  CHECK(robust.chi2 < 2 * robust.dof);
+  CHECK(plain.chi2 > 3 * plain.dof);
   CHECK(std::abs(robust.m_b - truth.m_b) < 3 * std::sqrt(robust.covariance(1, 1)));
+}
+
+TEST_CASE("the robust loss does not hide a template that fits nowhere") {
+  const Lab lab;
+  const Truth truth;
+  FitOptions options;
+  options.robust = true;
+  // Every second epoch off by ten of its errors: too many to dismiss.
+  LightCurve half = observe(truth, lab.model, lab.catalogue, four, -12, 44, 4, 0.01);
+  for (std::size_t i = 0; i < half.epochs.size(); i += 2) half.epochs[i].flux += 10 * half.epochs[i].flux_error;
+  CHECK_FALSE(lab.fit(truth, half, options).trusted());
+  // Errors stated three times too small: no epoch is wild, and none fits.
+  std::mt19937_64 generator(3);
+  LightCurve all = observe(truth, lab.model, lab.catalogue, four, -12, 44, 4, 0.05, &generator);
+  for (Epoch& epoch : all.epochs) epoch.flux_error /= 3;
+  options.template_scatter = false;
+  const auto fit = lab.fit(truth, all, options);
+  CHECK(has(fit, Remark::improbable));
+  CHECK_FALSE(fit.trusted());
 }
 
 TEST_CASE("two peaks in sparse data compete") {

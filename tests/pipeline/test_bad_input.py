@@ -136,6 +136,14 @@ class BadInput(unittest.TestCase):
         for command in ("check", "run"):
             self.refused(3, "run.toml, row %d" % (RUN.count("\n") + 2), "lark-q", command=command)
 
+    def test_error_scale_of_unknown_passband(self):
+        key = 'supernovae = "data/supernovae/larkspur.ecsv"\n'
+        text = RUN.replace(key, key + "error_scale = {lark-q = 1.2}\n")
+        write_run_file(self.folder, text=text)
+        row = text[:text.index("error_scale")].count("\n") + 1
+        for command in ("check", "run"):
+            self.refused(3, "run.toml, row %d" % row, "column error_scale", "lark-q", command=command)
+
     def test_systematic_of_unknown_survey(self):
         write_run_file(self.folder, '[[systematic]]\nkind = "redshift"\nsurveys = ["larkspurr"]\n')
         for command in ("check", "run"):

@@ -2,6 +2,7 @@
 the correction for a survey's magnitude limit.
 """
 import csv
+import json
 import os
 import shutil
 import sys
@@ -39,6 +40,45 @@ class Choices(unittest.TestCase):
 
     def contribution(self, source):
         return next(float(row["ab_contribution"]) for row in table(self.folder, "budget") if row["source"] == source)
+
+    def error_factor(self, passband):
+        row = next(row for row in table(self.folder, "error-factors") if row["passband"] == passband)
+        return float(row["error_factor"]), float(row["error_factor_error"])
+
+    def warned_of_errors(self):
+        with open(os.path.join(self.folder, "results", "summary.json"), encoding="utf-8") as text:
+            return [line for line in json.load(text)["warnings"] if "Measured errors" in line]
+
+    def test_errors_stated_too_small(self):
+        photometry = os.path.join(self.folder, "data", "lightcurves", "larkspur.ecsv")
+        with open(photometry, encoding="utf-8") as text:
+            lines = text.read().split("\n")
+        names = next(line for line in lines if not line.startswith("#")).split(",")
+        for i, line in enumerate(lines):
+            cells = line.split(",")
+            if len(cells) == len(names) and cells[names.index("passband")] == "lark-g":
+                cells[names.index("flux_error")] = "%.6g" % (float(cells[names.index("flux_error")]) / 1.6)
+                lines[i] = ",".join(cells)
+        with open(photometry, "w", encoding="utf-8") as text:
+            text.write("\n".join(lines))
+        shutil.rmtree(os.path.join(self.folder, "results"))
+        key = 'supernovae = "data/supernovae/larkspur.ecsv"\n'
+        self.a_b()
+        found, error = self.error_factor("lark-g")
+        self.assertLess(error, 0.1 * found)
+        self.assertLess(abs(found - 1.6), 3.5 * error)
+        self.assertEqual(len(self.warned_of_errors()), 1)
+        self.assertIn("larkspur lark-g, too small", self.warned_of_errors()[0])
+        errors = [float(row["flux_error"]) for row in table(self.folder, "lightcurve-points")
+                  if row["passband"] == "lark-g"]
+        self.a_b(text=RUN.replace(key, key + "error_scale = {lark-g = 1.6}\n"))
+        scaled = [float(row["flux_error"]) for row in table(self.folder, "lightcurve-points")
+                  if row["passband"] == "lark-g"]
+        self.assertAlmostEqual(scaled[0], 1.6 * errors[0], delta=1e-6 * scaled[0])
+        for passband in ("lark-b", "lark-g", "lark-r"):
+            found, error = self.error_factor(passband)
+            self.assertLess(abs(found - 1), 3.5 * error)
+        self.assertEqual(self.warned_of_errors(), [])
 
     def test_velocity_scatter(self):
         before, after = (self.a_b(text=RUN + "sigma_v = %d\n" % v) for v in (250, 350))

@@ -168,3 +168,33 @@ TEST_CASE("a run that joins by calibrators is blind, and names their files") {
   CHECK(run.join.calibrators.written == "c.ecsv");
   CHECK(run.join.covariance.written == "c.fits");
 }
+
+TEST_CASE("errors of a survey are multiplied for all passbands, or for those named") {
+  using Catch::Matchers::Contains;
+  const auto light_curves = [] {
+    std::vector<LightCurve> out(1);
+    out[0].passbands = {"north-b", "north-r"};
+    out[0].epochs = {{57000, 0, 10, 1, 1}, {57001, 1, 20, 2, 2}};
+    return out;
+  };
+  auto all = light_curves();
+  read(smallest + "error_scale = 1.5\n").surveys[0].error_scale.apply(all);
+  CHECK(all[0].epochs[0].flux_error == 1.5);
+  CHECK(all[0].epochs[1].flux_error == 3.0);
+  CHECK(all[0].epochs[1].flux == 20);
+  auto one = light_curves();
+  read(smallest + "error_scale = {north-r = 1.25}\n").surveys[0].error_scale.apply(one);
+  CHECK(one[0].epochs[0].flux_error == 1.0);
+  CHECK(one[0].epochs[1].flux_error == 2.5);
+  auto none = light_curves();
+  read(smallest).surveys[0].error_scale.apply(none);
+  CHECK(none[0].epochs[1].flux_error == 2.0);
+
+  auto wrong = light_curves();
+  const ErrorScale scale = read(smallest + "error_scale = {north-g = 1.25}\n").surveys[0].error_scale;
+  CHECK_THROWS_WITH(scale.apply(wrong), Contains("row 9") && Contains("north-g"));
+  CHECK(wrong[0].epochs[1].flux_error == 2.0);
+  CHECK_THAT(fault(smallest + "error_scale = 0\n"), Contains("row 9") && Contains("from 0.1 to 10"));
+  CHECK_THAT(fault(smallest + "error_scale = \"big\"\n"), Contains("error_scale"));
+  CHECK_THAT(fault(smallest + "error_scale = {north-r = -1}\n"), Contains("north-r") && Contains("from 0.1 to 10"));
+}

@@ -78,7 +78,7 @@ TEST_CASE("the scatter is where the restricted likelihood, from full matrices, i
   const UnknownsPrior prior;
   ScatterOptions options;
   options.iterations = 100;
-  const double reached = fit_scatter(model, set.supernovae, set.unknowns, set.weights, prior, options, 1);
+  const double reached = fit_scatter(model, set.supernovae, set.unknowns, prior, options, 1);
   const double expected = restricted_log_likelihood(model, set, prior, options);
   CHECK(reached == Approx(expected).epsilon(1e-9));
   const double step = 1e-3;
@@ -111,7 +111,7 @@ TEST_CASE("scatter that was put in comes back") {
   SpectralTemplate model = simulated.truth;
   model.log_epoch_scatter.setConstant(std::log(0.07));
   model.log_colour_scatter.setConstant(std::log(0.005));
-  fit_scatter(model, set.supernovae, set.unknowns, set.weights, {}, {}, 1);
+  fit_scatter(model, set.supernovae, set.unknowns, {}, {}, 1);
   // 5544 epochs over 81 nodes and 540 bands over 9: sampling errors of a node are near 6% (ε) and 10% (κ, of which four
   // combinations a supernova go into its unknowns). Bounds: four of these, away from the ends that have few data.
   for (const double p : {-8.0, 0.0, 12.0, 25.0}) {
@@ -119,6 +119,79 @@ TEST_CASE("scatter that was put in comes back") {
       CHECK(model.epoch_scatter(p, w) == Approx(0.02).epsilon(0.25));
   }
   for (const double w : {4400.0, 5000.0, 5700.0, 6500.0}) CHECK(model.colour_scatter(w) == Approx(0.02).epsilon(0.4));
+}
+
+namespace {
+
+/// Multiplies the errors of one passband of one survey.
+void scale_errors(std::vector<TrainingSupernova>& supernovae, const std::string& survey, const std::string& passband,
+                  double factor) {
+  for (TrainingSupernova& sn : supernovae) {
+    if (sn.survey != survey) continue;
+    for (const TrainingBand& band : sn.bands) {
+      if (band.passband != passband) continue;
+      for (std::size_t e = band.begin; e < band.end; ++e) sn.epochs[e].flux_error *= factor;
+    }
+  }
+}
+
+}  // namespace
+
+TEST_CASE("factors on measured errors are where the restricted likelihood, from full matrices, is stationary") {
+  SimulatedTrainingOptions how;
+  how.supernovae = 12;
+  const SimulatedTraining simulated = simulated_training(how);
+  PreparedTraining set = prepared(simulated);
+  scale_errors(set.supernovae, "heron", "blue", 0.7);
+  const UnknownsPrior prior;
+  ScatterOptions options;
+  options.iterations = 100;
+  const std::vector<ErrorFactor> factors =
+      error_factors(simulated.truth, set.supernovae, set.unknowns, prior, TemplateScatter::held, options, 1);
+  REQUIRE(factors.size() == 9);
+  for (const ErrorFactor& f : factors) scale_errors(set.supernovae, f.survey, f.passband, f.factor);
+  const double step = 1e-3;
+  for (const ErrorFactor& f : factors) {
+    const auto at = [&](double d) {
+      PreparedTraining moved = set;
+      scale_errors(moved.supernovae, f.survey, f.passband, std::exp(d));
+      const double off = (std::log(f.factor) + d) / options.factor_width;
+      return restricted_log_likelihood(simulated.truth, moved, prior, options) - 0.5 * off * off;
+    };
+    const double up = at(step) - at(0);
+    const double down = at(-step) - at(0);
+    const double slope = (up - down) / (2 * step);
+    const double curvature = -(up + down) / (step * step);
+    CHECK(std::abs(slope) / std::sqrt(curvature) < 0.03);
+    // The error given is that of the expected curvature; a dozen supernovae leave a third between the two.
+    CHECK(f.error / f.factor == Approx(1 / std::sqrt(curvature)).epsilon(0.33));
+  }
+}
+
+TEST_CASE("errors stated too small are found out, and the scatter beside them is not changed by it") {
+  SimulatedTrainingOptions how;
+  how.supernovae = 120;
+  how.noise = 0.02;
+  how.seed = 5;
+  const SimulatedTraining simulated = simulated_training(how);
+  PreparedTraining set = prepared(simulated);
+  scale_errors(set.supernovae, "heron", "blue", 1 / 1.5);
+  for (const TemplateScatter scatter : {TemplateScatter::estimated_along, TemplateScatter::held}) {
+    const std::vector<ErrorFactor> factors =
+        error_factors(simulated.truth, set.supernovae, set.unknowns, {}, scatter, {}, 1);
+    for (const ErrorFactor& f : factors) {
+      const bool scaled = f.survey == "heron" && f.passband == "blue";
+      const double truth = scaled ? 1.5 : 1.0;
+      CHECK(f.error < 0.1 * truth);
+      CHECK(std::abs(f.factor - truth) < 3.5 * f.error);
+      if (scaled) CHECK(f.supernovae == 60);
+    }
+  }
+  const auto alone =
+      error_factors(simulated.truth, set.supernovae, set.unknowns, {}, TemplateScatter::estimated_along, {}, 1);
+  const auto together =
+      error_factors(simulated.truth, set.supernovae, set.unknowns, {}, TemplateScatter::estimated_along, {}, 2);
+  for (std::size_t b = 0; b < alone.size(); ++b) CHECK(alone[b].factor == together[b].factor);
 }
 
 }  // namespace thirdrung::testing
