@@ -3,6 +3,8 @@
 #include <fmt/format.h>
 
 #include <array>
+#include <cmath>
+#include <limits>
 #include <map>
 #include <set>
 
@@ -109,8 +111,11 @@ Table error_factors_of(const Bench& bench, const SpectralTemplate& model, const 
   constexpr UnknownsPrior wide{1, 100, 0, 100};
   std::vector<LightCurveFit> rows;
   for (FittedSupernova& one : read_fits(fits)) rows.push_back(std::move(one.fit));
+  const FitOptions& options = bench.options;
+  const double largest_pull = options.robust ? options.robust_scale * std::sqrt(1 / options.mistrust_below - 1)
+                                             : std::numeric_limits<double>::infinity();
   const FittedSet set = fitted_set(bench.photometry.light_curves, bench.supernovae.supernovae, rows, model,
-                                   bench.catalogue, bench.dust, {bench.options.phase_min, bench.options.phase_max});
+                                   bench.catalogue, bench.dust, {options.phase_min, options.phase_max}, largest_pull);
   return error_factors_table(
       error_factors(model, set.supernovae, set.unknowns, wide, TemplateScatter::held, {}, threads));
 }

@@ -28,6 +28,20 @@ LightCurveFits fit_inputs(const Inputs& inputs, const SpectralTemplate& model, c
                  setup.trainer.threads);
 }
 
+using Key = std::pair<std::string, std::string>;  ///< Survey and passband.
+
+/// Those without a factor stay as they are.
+void multiply(std::vector<LightCurve>& light_curves, const std::map<Key, double>& flux,
+              const std::map<Key, double>& error) {
+  for (LightCurve& light_curve : light_curves) {
+    for (Epoch& epoch : light_curve.epochs) {
+      const Key key{light_curve.survey, light_curve.passbands[epoch.passband]};
+      if (const auto found = flux.find(key); found != flux.end()) epoch.flux *= found->second;
+      if (const auto found = error.find(key); found != error.end()) epoch.flux_error *= found->second;
+    }
+  }
+}
+
 /// Error of a zero point that the catalogue does not state; common practice, no source.
 constexpr double usual_zero_point_error = 0.02;
 
@@ -66,22 +80,18 @@ CheckFits check_on_other_surveys(std::span<const TrainingCandidate> candidates, 
   };
   out.as_given = fit_inputs(inputs, model, catalogue, dust, setup);
   out.offsets = offsets_of(set_of(out.as_given), model, catalogue, setup.trainer);
-  std::map<std::pair<std::string, std::string>, double> factor;
-  for (const ZeroPointOffset& offset : out.offsets) {
-    factor[{offset.survey, offset.passband}] = std::pow(10.0, -0.4 * offset.offset);
-  }
-  for (LightCurve& light_curve : inputs.light_curves) {
-    for (Epoch& epoch : light_curve.epochs) {
-      const auto found = factor.find({light_curve.survey, light_curve.passbands[epoch.passband]});
-      if (found == factor.end()) continue;
-      epoch.flux *= found->second;
-      epoch.flux_error *= found->second;
-    }
-  }
+  std::map<Key, double> flux_factor;
+  for (const ZeroPointOffset& offset : out.offsets)
+    flux_factor[{offset.survey, offset.passband}] = std::pow(10.0, -0.4 * offset.offset);
+  multiply(inputs.light_curves, flux_factor, flux_factor);
   out.with_offsets = fit_inputs(inputs, model, catalogue, dust, setup);
   const FittedSet set = set_of(out.with_offsets);
   out.error_factors = error_factors(model, set.supernovae, set.unknowns, setup.trainer.prior, TemplateScatter::held,
                                     setup.trainer.scatter, setup.trainer.threads);
+  std::map<Key, double> error_factor;
+  for (const ErrorFactor& one : out.error_factors) error_factor[{one.survey, one.passband}] = one.factor;
+  multiply(inputs.light_curves, {}, error_factor);
+  out.with_factors = fit_inputs(inputs, model, catalogue, dust, setup);
   return out;
 }
 

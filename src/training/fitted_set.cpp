@@ -5,6 +5,8 @@
 #include <map>
 #include <string>
 
+#include "training/trainer.h"
+
 namespace thirdrung {
 
 namespace {
@@ -29,11 +31,34 @@ std::map<std::string, double> limits_of(std::span<const LightCurveFit> fits) {
   return out;
 }
 
+void drop_wild_epochs(const SpectralTemplate& model, const SupernovaUnknowns& at, double largest_pull,
+                      TrainingSupernova& sn) {
+  if (std::isinf(largest_pull)) return;
+  // With one degree of freedom the weight of a pull x is 2/(1 + x^2).
+  const Eigen::VectorXd weight = robust_weights_of(model, sn, at, 1);
+  const double least = 2 / (1 + largest_pull * largest_pull);
+  std::vector<TrainingEpoch> epochs;
+  std::vector<TrainingBand> bands;
+  for (TrainingBand& band : sn.bands) {
+    const std::size_t begin = epochs.size();
+    for (std::size_t e = band.begin; e < band.end; ++e) {
+      if (weight(static_cast<Eigen::Index>(e)) >= least) epochs.push_back(sn.epochs[e]);
+    }
+    if (epochs.size() == begin) continue;
+    band.begin = begin;
+    band.end = epochs.size();
+    bands.push_back(std::move(band));
+  }
+  sn.epochs = std::move(epochs);
+  sn.bands = std::move(bands);
+}
+
 }  // namespace
 
 FittedSet fitted_set(std::span<const LightCurve> light_curves, std::span<const Supernova> supernovae,
                      std::span<const LightCurveFit> fits, const SpectralTemplate& model,
-                     const PassbandCatalogue& catalogue, const Extinction& dust, std::pair<double, double> phases) {
+                     const PassbandCatalogue& catalogue, const Extinction& dust, std::pair<double, double> phases,
+                     double largest_pull) {
   const std::map<std::string, double> limit = limits_of(fits);
   std::map<Key, const LightCurveFit*> fit_of;
   for (const LightCurveFit& fit : fits) fit_of[{fit.survey, fit.supernova}] = &fit;
@@ -47,9 +72,11 @@ FittedSet fitted_set(std::span<const LightCurve> light_curves, std::span<const S
     const LightCurveFit& fit = *found->second;
     if (!(fit.dof > 0) || !std::isfinite(fit.t_0) || !(fit.chi2 <= limit.at(fit.survey) * fit.dof)) continue;
     TrainingSupernova sn = prepare_supernova(light_curve, *supernova->second, fit.t_0, model, catalogue, dust, phases);
+    const SupernovaUnknowns at{fit.t_0, fit.m_b, fit.s, fit.c};
+    drop_wild_epochs(model, at, largest_pull, sn);
     if (sn.epochs.size() < least_epochs) continue;
     out.supernovae.push_back(std::move(sn));
-    out.unknowns.push_back({fit.t_0, fit.m_b, fit.s, fit.c});
+    out.unknowns.push_back(at);
   }
   return out;
 }

@@ -1,6 +1,6 @@
 #pragma once
 
-#include <functional>
+#include <limits>
 #include <span>
 #include <utility>
 #include <vector>
@@ -21,8 +21,10 @@ struct FittedSet {
 /// does not.
 ///
 /// @param fits any order; each is matched by survey and supernova. @param phases used [d].
+/// @param largest_pull epochs beyond it, their band's common offset taken out, are dropped: as a robust fit does.
 FittedSet fitted_set(std::span<const LightCurve> light_curves, std::span<const Supernova> supernovae,
                      std::span<const LightCurveFit> fits, const SpectralTemplate& model,
-                     const PassbandCatalogue& catalogue, const Extinction& dust, std::pair<double, double> phases);
+                     const PassbandCatalogue& catalogue, const Extinction& dust, std::pair<double, double> phases,
+                     double largest_pull = std::numeric_limits<double>::infinity());
 
 }  // namespace thirdrung

@@ -37,6 +37,7 @@ struct CheckFits {
   std::vector<ErrorFactor> error_factors;  ///< That they prefer after those offsets, the template's scatter held.
   LightCurveFits as_given;
   LightCurveFits with_offsets;  ///< After those offsets have been added to their magnitudes.
+  LightCurveFits with_factors;  ///< And their errors multiplied by the factors.
 };
 
 /// Everything a training run yields.

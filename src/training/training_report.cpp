@@ -167,7 +167,7 @@ double median_of(std::vector<double> values) {
 /// Surveys that had no part in the training: medians, because a few peculiar supernovae would rule a mean.
 std::string check_text(const CheckFits& check) {
   struct Survey {
-    std::vector<double> as_given, with_offsets;
+    std::vector<double> as_given, with_offsets, with_factors;
     int trusted = 0, fits = 0;
   };
   std::map<std::string, Survey> surveys;
@@ -182,13 +182,18 @@ std::string check_text(const CheckFits& check) {
     if (fit.trusted()) ++survey.trusted;
     if (fit.dof > 0) survey.with_offsets.push_back(fit.chi2 / fit.dof);
   });
+  each(check.with_factors, [](Survey& survey, const LightCurveFit& fit) {
+    if (fit.dof > 0) survey.with_factors.push_back(fit.chi2 / fit.dof);
+  });
   std::string out =
-      "Fitted with the finished template, as given and after the zero-point offsets that they prefer.\n\n"
-      "| survey | fits | trusted, with offsets | median χ² per degree of freedom, as given | with offsets |\n"
-      "|---|---:|---:|---:|---:|\n";
+      "Fitted with the finished template, as given, after the zero-point offsets that they prefer, and with the "
+      "factors on their errors that they prefer.\n\n"
+      "| survey | fits | trusted, with offsets | median χ² per degree of freedom, as given | with offsets | with "
+      "factors too |\n"
+      "|---|---:|---:|---:|---:|---:|\n";
   for (const auto& [name, survey] : surveys) {
-    out += fmt::format("| {} | {} | {} | {:.2f} | {:.2f} |\n", name, survey.fits, survey.trusted,
-                       median_of(survey.as_given), median_of(survey.with_offsets));
+    out += fmt::format("| {} | {} | {} | {:.2f} | {:.2f} | {:.2f} |\n", name, survey.fits, survey.trusted,
+                       median_of(survey.as_given), median_of(survey.with_offsets), median_of(survey.with_factors));
   }
   out += "\n| survey | passband | offset [mmag] | supernovae |\n|---|---|---:|---:|\n";
   for (const ZeroPointOffset& o : check.offsets) {
