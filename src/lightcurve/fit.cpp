@@ -95,11 +95,13 @@ void describe_epochs(const Problem& problem, const LightCurve& light_curve, cons
     out.freedom = std::max(0.0, 1 - by_parameters.dot(solution.covariance * by_parameters) / variance);
     if (!solution.weights.empty()) out.weight = solution.weights[k];
     out.mistrusted = out.weight < problem.options.mistrust_below;
-    fit.first_phase = k == 0 ? out.phase : std::min(fit.first_phase, out.phase);
-    fit.last_phase = k == 0 ? out.phase : std::max(fit.last_phase, out.phase);
+    fit.epochs.push_back(out);
+    // What the robust loss has dismissed is no reason to trust a fit.
+    if (out.mistrusted) continue;
+    fit.first_phase = fit.bands_used.empty() ? out.phase : std::min(fit.first_phase, out.phase);
+    fit.last_phase = fit.bands_used.empty() ? out.phase : std::max(fit.last_phase, out.phase);
     const std::string& id = light_curve.passbands[band.passband];
     if (fit.bands_used.empty() || fit.bands_used.back() != id) fit.bands_used.push_back(id);
-    fit.epochs.push_back(out);
   }
   std::sort(fit.epochs.begin(), fit.epochs.end(),
             [](const FittedEpoch& a, const FittedEpoch& b) { return a.epoch < b.epoch; });
@@ -140,7 +142,7 @@ void remark_on(const Problem& problem, const Solution& solution, bool reselected
   };
   add_if(!solution.converged, Remark::not_converged);
   add_if(fit.epochs_used < 5, Remark::too_few_epochs);
-  add_if(solution.bands < 2, Remark::one_band);
+  add_if(fit.bands_used.size() < 2, Remark::one_band);
   add_if(at_bound(fit.s, options.s_min, options.s_max), Remark::s_at_bound);
   add_if(at_bound(fit.c, options.c_min, options.c_max), Remark::c_at_bound);
   add_if(at_bound(solution.at[0], problem.window.first, problem.window.last), Remark::t_0_at_bound);
@@ -154,7 +156,8 @@ void remark_on(const Problem& problem, const Solution& solution, bool reselected
   add_if(fit.fit_probability < options.improbable && fit.chi2 > options.impossible_chi2_per_dof * fit.dof,
          Remark::improbable);
   add_if(fit.first_phase > 0 || fit.last_phase < 0, Remark::t_0_outside_data);
-  add_if(fit.mistrusted_epochs() > options.most_mistrusted * fit.epochs_used, Remark::many_mistrusted);
+  add_if(fit.mistrusted_epochs() > options.most_mistrusted * static_cast<double>(fit.epochs.size()),
+         Remark::many_mistrusted);
   add_if(fit.mistrusted_epochs() > 0, Remark::epochs_mistrusted);
   add_if(!fit.bands_left_out.empty(), Remark::bands_left_out);
   add_if(reselected, Remark::epochs_reselected);
@@ -169,8 +172,8 @@ void fill(const Problem& problem, const LightCurve& light_curve, const PreparedT
   fit.c = best.at[3];
   fit.covariance = best.covariance;
   fit.chi2 = best.chi2;
-  fit.epochs_used = static_cast<int>(best.selection.size());
-  fit.dof = std::max(0, static_cast<int>(best.counted) - 4);
+  fit.epochs_used = static_cast<int>(best.counted);
+  fit.dof = std::max(0, fit.epochs_used - 4);
   fit.fit_probability = chi_square_survival(fit.chi2, fit.dof);
   fit.dm15_b = prepared.dm15_b(fit.s, fit.c);
   fit.iterations = best.iterations;

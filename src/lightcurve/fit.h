@@ -106,9 +106,9 @@ struct LightCurveFit {
   double chi2 = missing_value;
   int dof = 0;
   double fit_probability = missing_value;  ///< Chance of a larger χ² (1 without degrees of freedom).
-  std::vector<std::string> bands_used;     ///< From blue to red.
+  std::vector<std::string> bands_used;     ///< From blue to red; with an epoch that is not mistrusted.
   std::vector<BandLeftOut> bands_left_out;
-  int epochs_used = 0;
+  int epochs_used = 0;                 ///< Without those mistrusted, like chi2, dof and the two phases.
   double first_phase = missing_value;  ///< Rest frame [d].
   double last_phase = missing_value;   ///< [d]
   double dm15_b = missing_value;       ///< Decline of rest-frame B in 15 d [mag].

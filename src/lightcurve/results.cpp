@@ -89,12 +89,13 @@ Table fits_table(std::span<const LightCurveFit> fits) {
   covariance("cov_mb_s", "mag", 1, 2);
   covariance("cov_mb_c", "mag2", 1, 3);
   covariance("cov_s_c", "mag", 2, 3);
-  reals("chi2", "", "of the data, with the template's scatter", [](const Fit& fit) { return fit.chi2; });
+  reals("chi2", "", "of the epochs used, with the template's scatter", [](const Fit& fit) { return fit.chi2; });
   table.add_integers("dof", each_integer(fits, [](const Fit& fit) { return fit.dof; }), "", "degrees of freedom");
   reals("fit_probability", "", "chance of a larger chi2", [](const Fit& fit) { return fit.fit_probability; });
   table.add_strings("bands_used", each_text(fits, [](const Fit& fit) { return joined(fit.bands_used); }),
                     "passbands fitted, from blue to red");
-  table.add_integers("epochs_used", each_integer(fits, [](const Fit& fit) { return fit.epochs_used; }));
+  table.add_integers("epochs_used", each_integer(fits, [](const Fit& fit) { return fit.epochs_used; }), "",
+                     "epochs fitted, without the mistrusted ones");
   reals("first_phase", "d", "rest-frame phase of the first epoch used", [](const Fit& fit) { return fit.first_phase; });
   reals("last_phase", "d", "rest-frame phase of the last epoch used", [](const Fit& fit) { return fit.last_phase; });
   reals("dm15_b", "mag", "decline of rest-frame B in the 15 d after maximum",

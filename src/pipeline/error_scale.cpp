@@ -16,18 +16,19 @@ constexpr double most_factor = 10;
 
 }  // namespace
 
-void ErrorScale::apply(std::span<LightCurve> light_curves) const {
+void ErrorScale::apply(Photometry& photometry, const PassbandCatalogue& catalogue) const {
   std::set<std::string> present;
-  for (const LightCurve& one : light_curves) present.insert(one.passbands.begin(), one.passbands.end());
+  for (const LightCurve& one : photometry.light_curves) present.insert(one.passbands.begin(), one.passbands.end());
   const std::vector<std::string> known(present.begin(), present.end());
   for (const auto& [passband, factor] : of_passband) {
     if (present.contains(passband)) continue;
+    if (!photometry.set_aside.empty() && catalogue.has(passband)) continue;
     const std::string near = nearest_word(passband, known);
     throw InputError(
         place, fmt::format("error_scale names the passband {}, which the photometry lacks", passband),
         near.empty() ? fmt::format("it has {}", fmt::join(known, ", ")) : fmt::format("did you mean {}?", near));
   }
-  for (LightCurve& one : light_curves) {
+  for (LightCurve& one : photometry.light_curves) {
     for (Epoch& epoch : one.epochs) {
       const auto own = of_passband.find(one.passbands[epoch.passband]);
       epoch.flux_error *= own == of_passband.end() ? of_all : own->second;

@@ -1,7 +1,6 @@
 #pragma once
 
 #include <map>
-#include <span>
 #include <string>
 
 #include "lightcurve/photometry.h"
@@ -15,8 +14,9 @@ struct ErrorScale {
   double of_all = 1;
   std::map<std::string, double> of_passband;  ///< By id; the others keep their errors.
 
-  /// Multiplies the flux errors. Throws InputError for a passband that none of the light curves has.
-  void apply(std::span<LightCurve> light_curves) const;
+  /// Multiplies the flux errors. Throws InputError for a passband that the survey does not have, unless the light
+  /// curves set aside may have had it.
+  void apply(Photometry& photometry, const PassbandCatalogue& catalogue) const;
 };
 
 /// The key `error_scale` of a survey: one number for all passbands, or { passband = number }; 1 without it. Factors

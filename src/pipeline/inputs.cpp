@@ -104,7 +104,7 @@ Photometry read_all_photometry(const RunFile& run, const PassbandCatalogue& cata
   for (const SurveyInput& survey : run.surveys) {
     require_exists(survey.photometry);
     Photometry one = read_photometry(survey.photometry.path, catalogue, survey.name);
-    survey.error_scale.apply(one.light_curves);
+    survey.error_scale.apply(one, catalogue);
     for (LightCurve& light_curve : one.light_curves) all.light_curves.push_back(std::move(light_curve));
     append(all.set_aside, std::move(one.set_aside));
   }

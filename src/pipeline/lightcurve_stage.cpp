@@ -3,8 +3,6 @@
 #include <fmt/format.h>
 
 #include <array>
-#include <cmath>
-#include <limits>
 #include <map>
 #include <set>
 
@@ -15,7 +13,7 @@
 #include "pipeline/inputs.h"
 #include "pipeline/table_tools.h"
 #include "tables/fits_image.h"
-#include "training/fitted_set.h"
+#include "training/error_factors.h"
 #include "training/training_tables.h"
 
 namespace thirdrung {
@@ -106,18 +104,17 @@ Table all_set_aside(const Bench& bench, const Table& from_fits) {
   return rows_of(table, keep);
 }
 
-/// With priors of s and c too wide to count, as the fits have none.
-Table error_factors_of(const Bench& bench, const SpectralTemplate& model, const Table& fits, int threads) {
-  constexpr UnknownsPrior wide{1, 100, 0, 100};
+Table error_factors_of(const Bench& bench, SpectralTemplate model, const Table& fits, int threads) {
   std::vector<LightCurveFit> rows;
   for (FittedSupernova& one : read_fits(fits)) rows.push_back(std::move(one.fit));
-  const FitOptions& options = bench.options;
-  const double largest_pull = options.robust ? options.robust_scale * std::sqrt(1 / options.mistrust_below - 1)
-                                             : std::numeric_limits<double>::infinity();
-  const FittedSet set = fitted_set(bench.photometry.light_curves, bench.supernovae.supernovae, rows, model,
-                                   bench.catalogue, bench.dust, {options.phase_min, options.phase_max}, largest_pull);
-  return error_factors_table(
-      error_factors(model, set.supernovae, set.unknowns, wide, TemplateScatter::held, {}, threads));
+  if (!bench.options.template_scatter) {
+    model.log_epoch_scatter.resize(0, 0);
+    model.log_colour_scatter.resize(0);
+  }
+  const FittedSet set =
+      fitted_set(bench.photometry.light_curves, bench.supernovae.supernovae, rows, model, bench.catalogue, bench.dust,
+                 {bench.options.phase_min, bench.options.phase_max}, threads);
+  return error_factors_table(error_factors_of_fits(model, set, threads));
 }
 
 }  // namespace

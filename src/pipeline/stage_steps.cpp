@@ -84,7 +84,8 @@ StageStep light_curves_step() {
   StageStep step;
   step.wanted = always;
   step.depends_on = [](const StageContext& context) {
-    return settings_of(context.run, {"survey", "milky_way", "lightcurve"}) +
+    // The first words change with what the stage makes: results of an older program are made again.
+    return "light curves 2\n" + settings_of(context.run, {"survey", "milky_way", "lightcurve"}) +
            fmt::format("curves {}\n", context.run.report.light_curves) + context.lightcurve_inputs;
   };
   step.make = [](const StageContext& context, const std::string& key) {

@@ -115,7 +115,7 @@ std::vector<TrainingCandidate> read_candidates(const TrainingFile& file, bool ch
     if (survey.check != check) continue;
     SupernovaList list = read_supernovae(read_table(survey.supernovae.path), survey.name);
     Photometry photometry = read_photometry(survey.photometry.path, catalogue, survey.name);
-    survey.error_scale.apply(photometry.light_curves);
+    survey.error_scale.apply(photometry, catalogue);
     set_aside.insert(set_aside.end(), list.set_aside.begin(), list.set_aside.end());
     set_aside.insert(set_aside.end(), photometry.set_aside.begin(), photometry.set_aside.end());
     for (LightCurve& light_curve : photometry.light_curves) {

@@ -70,12 +70,13 @@ void of_errors(const fs::path& folder, std::vector<std::string>& out) {
       wrong.push_back(i);
   }
   if (wrong.empty()) return;
-  const auto most = *std::max_element(wrong.begin(), wrong.end(), [&](std::size_t a, std::size_t b) {
-    return std::abs(std::log(factor[a])) < std::abs(std::log(factor[b]));
-  });
+  // The largest factor, since errors too small do more harm than errors too large.
+  const auto most = *std::max_element(wrong.begin(), wrong.end(),
+                                      [&](std::size_t a, std::size_t b) { return factor[a] < factor[b]; });
   out.push_back(fmt::format(
-      "Measured errors of {} do not agree with the scatter of their epochs (the most: {} {}, too {} by a factor of "
-      "{:.2f} ± {:.2f}); error-factors.ecsv has what error_scale of [[survey]] would be.",
+      "Epochs of {} scatter by more, or less, than their errors and the template say (the most: {} {}, errors "
+      "too {} by a factor of {:.2f} ± {:.2f}); error_scale of [[survey]] can be multiplied by the factors of "
+      "error-factors.ecsv.",
       counted(wrong.size(), "passband", "passbands"), survey[most], passband[most],
       factor[most] > 1 ? "small" : "large", factor[most] > 1 ? factor[most] : 1 / factor[most],
       factor[most] > 1 ? error[most] : error[most] / (factor[most] * factor[most])));

@@ -2,6 +2,7 @@
 #include <map>
 
 #include "base/parallel.h"
+#include "training/error_factors.h"
 #include "training/fitted_set.h"
 #include "training/run_training.h"
 
@@ -76,7 +77,7 @@ CheckFits check_on_other_surveys(std::span<const TrainingCandidate> candidates, 
   Inputs inputs(candidates);
   const auto set_of = [&](const LightCurveFits& fits) {
     return fitted_set(inputs.light_curves, inputs.supernovae, fits.fits, model, catalogue, dust,
-                      {setup.cuts.earliest, setup.cuts.latest});
+                      {setup.cuts.earliest, setup.cuts.latest}, setup.trainer.threads);
   };
   out.as_given = fit_inputs(inputs, model, catalogue, dust, setup);
   out.offsets = offsets_of(set_of(out.as_given), model, catalogue, setup.trainer);
@@ -85,9 +86,7 @@ CheckFits check_on_other_surveys(std::span<const TrainingCandidate> candidates, 
     flux_factor[{offset.survey, offset.passband}] = std::pow(10.0, -0.4 * offset.offset);
   multiply(inputs.light_curves, flux_factor, flux_factor);
   out.with_offsets = fit_inputs(inputs, model, catalogue, dust, setup);
-  const FittedSet set = set_of(out.with_offsets);
-  out.error_factors = error_factors(model, set.supernovae, set.unknowns, setup.trainer.prior, TemplateScatter::held,
-                                    setup.trainer.scatter, setup.trainer.threads);
+  out.error_factors = error_factors_of_fits(model, set_of(out.with_offsets), setup.trainer.threads);
   std::map<Key, double> error_factor;
   for (const ErrorFactor& one : out.error_factors) error_factor[{one.survey, one.passband}] = one.factor;
   multiply(inputs.light_curves, {}, error_factor);

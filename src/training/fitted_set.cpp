@@ -5,7 +5,7 @@
 #include <map>
 #include <string>
 
-#include "training/trainer.h"
+#include "base/parallel.h"
 
 namespace thirdrung {
 
@@ -31,52 +31,40 @@ std::map<std::string, double> limits_of(std::span<const LightCurveFit> fits) {
   return out;
 }
 
-void drop_wild_epochs(const SpectralTemplate& model, const SupernovaUnknowns& at, double largest_pull,
-                      TrainingSupernova& sn) {
-  if (std::isinf(largest_pull)) return;
-  // With one degree of freedom the weight of a pull x is 2/(1 + x^2).
-  const Eigen::VectorXd weight = robust_weights_of(model, sn, at, 1);
-  const double least = 2 / (1 + largest_pull * largest_pull);
-  std::vector<TrainingEpoch> epochs;
-  std::vector<TrainingBand> bands;
-  for (TrainingBand& band : sn.bands) {
-    const std::size_t begin = epochs.size();
-    for (std::size_t e = band.begin; e < band.end; ++e) {
-      if (weight(static_cast<Eigen::Index>(e)) >= least) epochs.push_back(sn.epochs[e]);
-    }
-    if (epochs.size() == begin) continue;
-    band.begin = begin;
-    band.end = epochs.size();
-    bands.push_back(std::move(band));
-  }
-  sn.epochs = std::move(epochs);
-  sn.bands = std::move(bands);
-}
-
 }  // namespace
 
 FittedSet fitted_set(std::span<const LightCurve> light_curves, std::span<const Supernova> supernovae,
                      std::span<const LightCurveFit> fits, const SpectralTemplate& model,
                      const PassbandCatalogue& catalogue, const Extinction& dust, std::pair<double, double> phases,
-                     double largest_pull) {
+                     int threads) {
   const std::map<std::string, double> limit = limits_of(fits);
   std::map<Key, const LightCurveFit*> fit_of;
   for (const LightCurveFit& fit : fits) fit_of[{fit.survey, fit.supernova}] = &fit;
   std::map<Key, const Supernova*> supernova_of;
   for (const Supernova& one : supernovae) supernova_of[{one.survey, one.name}] = &one;
-  FittedSet out;
-  for (const LightCurve& light_curve : light_curves) {
+  std::vector<TrainingSupernova> prepared(light_curves.size());
+  std::vector<SupernovaUnknowns> unknowns(light_curves.size());
+  parallel_for(light_curves.size(), threads, [&](std::size_t k) {
+    const LightCurve& light_curve = light_curves[k];
     const auto found = fit_of.find({light_curve.survey, light_curve.supernova});
     const auto supernova = supernova_of.find({light_curve.survey, light_curve.supernova});
-    if (found == fit_of.end() || supernova == supernova_of.end()) continue;
+    if (found == fit_of.end() || supernova == supernova_of.end()) return;
     const LightCurveFit& fit = *found->second;
-    if (!(fit.dof > 0) || !std::isfinite(fit.t_0) || !(fit.chi2 <= limit.at(fit.survey) * fit.dof)) continue;
+    if (!(fit.dof > 0) || !std::isfinite(fit.t_0) || !(fit.chi2 <= limit.at(fit.survey) * fit.dof)) return;
     TrainingSupernova sn = prepare_supernova(light_curve, *supernova->second, fit.t_0, model, catalogue, dust, phases);
-    const SupernovaUnknowns at{fit.t_0, fit.m_b, fit.s, fit.c};
-    drop_wild_epochs(model, at, largest_pull, sn);
-    if (sn.epochs.size() < least_epochs) continue;
-    out.supernovae.push_back(std::move(sn));
-    out.unknowns.push_back(at);
+    keep_epochs(sn, [&](std::size_t e) {
+      const double q = (sn.epochs[e].mjd - fit.t_0) / (1 + sn.z_helio) / fit.s;
+      return q >= model.phase_min && q <= model.phase_max;
+    });
+    if (sn.epochs.size() < least_epochs) return;
+    unknowns[k] = {fit.t_0, fit.m_b, fit.s, fit.c};
+    prepared[k] = std::move(sn);
+  });
+  FittedSet out;
+  for (std::size_t k = 0; k < prepared.size(); ++k) {
+    if (prepared[k].epochs.empty()) continue;
+    out.supernovae.push_back(std::move(prepared[k]));
+    out.unknowns.push_back(unknowns[k]);
   }
   return out;
 }

@@ -1,6 +1,5 @@
 #pragma once
 
-#include <limits>
 #include <span>
 #include <utility>
 #include <vector>
@@ -20,11 +19,10 @@ struct FittedSet {
 /// χ² per degree of freedom within three times the survey's median (or of one, if that is larger). A peculiar supernova
 /// does not.
 ///
-/// @param fits any order; each is matched by survey and supernova. @param phases used [d].
-/// @param largest_pull epochs beyond it, their band's common offset taken out, are dropped: as a robust fit does.
+/// @param fits any order; each is matched by survey and supernova. @param phases used [d], and within the template's.
 FittedSet fitted_set(std::span<const LightCurve> light_curves, std::span<const Supernova> supernovae,
                      std::span<const LightCurveFit> fits, const SpectralTemplate& model,
                      const PassbandCatalogue& catalogue, const Extinction& dust, std::pair<double, double> phases,
-                     double largest_pull = std::numeric_limits<double>::infinity());
+                     int threads);
 
 }  // namespace thirdrung

@@ -8,6 +8,7 @@
 #include "lightcurve/fit.h"
 #include "template/trained_template.h"
 #include "training/cross_validation.h"
+#include "training/error_factors.h"
 #include "training/population.h"
 #include "training/selection.h"
 #include "training/template_bases.h"
@@ -52,7 +53,7 @@ struct TrainingResult {
   CrossValidationResult cross_validation;
   Eigen::MatrixXd covariance;              ///< Of all coefficients.
   std::vector<ZeroPointOffset> offsets;    ///< That the data would prefer.
-  std::vector<ErrorFactor> error_factors;  ///< On the errors as given, that the data would prefer.
+  std::vector<ErrorFactor> error_factors;  ///< On the errors that were used, that the data would prefer.
   LightCurveFits out_of_fold;  ///< Of all candidates; those outside the training set were never seen by any template.
   std::vector<SpectralTemplate> fold_templates;
   CheckFits check;

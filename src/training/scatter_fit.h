@@ -2,8 +2,6 @@
 
 #include <Eigen/Core>
 #include <span>
-#include <string>
-#include <vector>
 
 #include "training/normal_equations.h"
 
@@ -23,21 +21,5 @@ struct ScatterOptions {
 double fit_scatter(SpectralTemplate& model, std::span<const TrainingSupernova> supernovae,
                    std::span<const SupernovaUnknowns> unknowns, const UnknownsPrior& prior,
                    const ScatterOptions& options, int threads);
-
-/// Factor that the measured errors of one passband of one survey should be multiplied by.
-struct ErrorFactor {
-  std::string survey, passband;
-  double factor = 1, error = 0;  ///< 1σ, the others free.
-  int supernovae = 0, epochs = 0;
-};
-
-/// What to do about the template's own scatter while the factors are estimated.
-enum class TemplateScatter { estimated_along, held };
-
-/// Factors on the measured errors of all passbands, by the same likelihood: what a survey's errors leave out (or count
-/// twice) shows in the epochs whose measured error exceeds the template's scatter.
-std::vector<ErrorFactor> error_factors(const SpectralTemplate& model, std::span<const TrainingSupernova> supernovae,
-                                       std::span<const SupernovaUnknowns> unknowns, const UnknownsPrior& prior,
-                                       TemplateScatter scatter, const ScatterOptions& options, int threads);
 
 }  // namespace thirdrung

@@ -5,6 +5,7 @@
 #include <array>
 #include <cmath>
 #include <map>
+#include <tuple>
 
 #include "base/parallel.h"
 
@@ -65,9 +66,11 @@ Eigen::VectorXd ScatterLikelihood::start() const {
   using RowMajor = Eigen::Matrix<double, Eigen::Dynamic, Eigen::Dynamic, Eigen::RowMajor>;
   Eigen::VectorXd nodes =
       Eigen::VectorXd::Zero(epoch_nodes_ + colour_nodes_ + static_cast<Eigen::Index>(passbands_.size()));
-  Eigen::Map<RowMajor>(nodes.data(), model_.log_epoch_scatter.rows(), model_.log_epoch_scatter.cols()) =
-      model_.log_epoch_scatter;
-  nodes.segment(epoch_nodes_, colour_nodes_) = model_.log_colour_scatter;
+  if (epoch_nodes_ > 0) {
+    Eigen::Map<RowMajor>(nodes.data(), model_.log_epoch_scatter.rows(), model_.log_epoch_scatter.cols()) =
+        model_.log_epoch_scatter;
+  }
+  if (colour_nodes_ > 0) nodes.segment(epoch_nodes_, colour_nodes_) = model_.log_colour_scatter;
   return nodes;
 }
 
@@ -81,15 +84,22 @@ ScatterLikelihood::Frozen ScatterLikelihood::freeze(const TrainingSupernova& sn,
   out.epoch_nodes.resize(sn.epochs.size());
   const auto columns = static_cast<int>(model_.scatter_wavelength.size());
   for (const TrainingBand& band : sn.bands) {
-    const auto [col, across] = between(model_.scatter_wavelength, band.weights.mean_wavelength);
+    int col = 0;
+    double across = 0;
+    if (epoch_nodes_ > 0) std::tie(col, across) = between(model_.scatter_wavelength, band.weights.mean_wavelength);
     for (std::size_t e = band.begin; e < band.end; ++e) {
       const auto row = static_cast<Eigen::Index>(e);
       out.residual(row) = sn.epochs[e].flux - values.flux(row);
       out.measured_variance(row) = sn.epochs[e].flux_error * sn.epochs[e].flux_error;
+      if (epoch_nodes_ == 0) continue;
       const auto [line, along] = between(model_.scatter_phase, (sn.epochs[e].mjd - at.t_0) / (1 + sn.z_helio));
       out.epoch_nodes[e] = {
           {line * columns + col, line * columns + col + 1, (line + 1) * columns + col, (line + 1) * columns + col + 1},
           {(1 - along) * (1 - across), (1 - along) * across, along * (1 - across), along * across}};
+    }
+    if (colour_nodes_ == 0) {
+      out.band_nodes.emplace_back();
+      continue;
     }
     const auto [node, beyond] = between(model_.colour_scatter_wavelength, band.weights.mean_wavelength);
     out.band_nodes.push_back({{epoch_nodes_ + node, epoch_nodes_ + node + 1, 0, 0}, {1 - beyond, beyond, 0, 0}});
@@ -112,12 +122,12 @@ ScatterLikelihood::Value ScatterLikelihood::of_one(const TrainingSupernova& sn, 
     const double factor = std::exp(2 * nodes(frozen.factor_nodes[b]));
     for (std::size_t e = sn.bands[b].begin; e < sn.bands[b].end; ++e) {
       const auto i = static_cast<Eigen::Index>(e);
-      const double epsilon = std::exp(frozen.epoch_nodes[e].of(nodes));
+      const double epsilon = epoch_nodes_ == 0 ? 0 : std::exp(frozen.epoch_nodes[e].of(nodes));
       epoch_part(i) = epsilon * epsilon * frozen.flux(i) * frozen.flux(i);
       measured_part(i) = factor * frozen.measured_variance(i);
       noise.variance(i) = measured_part(i) + epoch_part(i);
     }
-    noise.colour_scatter.push_back(std::exp(frozen.band_nodes[b].of(nodes)));
+    noise.colour_scatter.push_back(colour_nodes_ == 0 ? 0 : std::exp(frozen.band_nodes[b].of(nodes)));
   }
 
   const Eigen::MatrixXd weighted = apply_inverse(sn, noise, frozen.flux, frozen.by_unknowns);

@@ -24,6 +24,7 @@ class ScatterLikelihood {
     std::string survey, passband;
     int supernovae = 0, epochs = 0;
   };
+  /// A template without scatter has no nodes of ε and κ.
   ScatterLikelihood(const SpectralTemplate& model, std::span<const TrainingSupernova> supernovae,
                     std::span<const SupernovaUnknowns> unknowns, const UnknownsPrior& prior,
                     const ScatterOptions& options, int threads);

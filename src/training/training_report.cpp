@@ -187,7 +187,7 @@ std::string check_text(const CheckFits& check) {
   });
   std::string out =
       "Fitted with the finished template, as given, after the zero-point offsets that they prefer, and with the "
-      "factors on their errors that they prefer.\n\n"
+      "factors on their errors that they prefer (found from the same light curves).\n\n"
       "| survey | fits | trusted, with offsets | median χ² per degree of freedom, as given | with offsets | with "
       "factors too |\n"
       "|---|---:|---:|---:|---:|---:|\n";
@@ -201,7 +201,7 @@ std::string check_text(const CheckFits& check) {
                        o.supernovae);
   }
   out += "\nFactors on the measured errors that would suit best after that, the template's scatter held:\n\n";
-  return out + error_factors_text(check.error_factors, "Their `error_scale` in a run file would be this factor.");
+  return out + error_factors_text(check.error_factors, "Multiply their `error_scale` in a run file by it.");
 }
 
 /// A reason without its figures, so that like reasons are counted together.
@@ -268,8 +268,9 @@ std::string training_report_text(const TrainingResult& result, std::span<const L
   if (!result.error_factors.empty()) {
     out += "## Measured errors\n\n";
     out +=
-        "Factor that the measured errors, as they came in, should be multiplied by: by restricted maximum likelihood "
-        "together with ε and κ, all passbands at once. Errors that leave something out show in epochs of which the "
+        "Factor that the measured errors, as they were used (`error_scale` and error floor included), should be "
+        "multiplied by: by restricted maximum likelihood together with ε and κ, all passbands at once. Errors that "
+        "leave something out show in epochs of which the "
         "measured error exceeds the template's own scatter.\n\n";
     out += error_factors_text(result.error_factors,
                               "Multiply the survey's `error_scale` in the training file by it, and train again.");

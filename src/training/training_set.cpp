@@ -77,4 +77,21 @@ TrainingSupernova prepare_supernova(const LightCurve& light_curve, const Superno
   return out;
 }
 
+void keep_epochs(TrainingSupernova& sn, const std::function<bool(std::size_t)>& keep) {
+  std::vector<TrainingEpoch> epochs;
+  std::vector<TrainingBand> bands;
+  for (TrainingBand& band : sn.bands) {
+    const std::size_t begin = epochs.size();
+    for (std::size_t e = band.begin; e < band.end; ++e) {
+      if (keep(e)) epochs.push_back(sn.epochs[e]);
+    }
+    if (epochs.size() == begin) continue;
+    band.begin = begin;
+    band.end = epochs.size();
+    bands.push_back(std::move(band));
+  }
+  sn.epochs = std::move(epochs);
+  sn.bands = std::move(bands);
+}
+
 }  // namespace thirdrung

@@ -1,5 +1,6 @@
 #pragma once
 
+#include <functional>
 #include <string>
 #include <vector>
 
@@ -52,5 +53,8 @@ TrainingBand band_on_bases(const std::string& id, BandWeights weights, const Spe
 TrainingSupernova prepare_supernova(const LightCurve& light_curve, const Supernova& supernova, double t_0_guess,
                                     const SpectralTemplate& bases, const PassbandCatalogue& catalogue,
                                     const Extinction& dust, std::pair<double, double> phases);
+
+/// Leaves out all epochs but those that `keep` is true for (by index), and bands without any.
+void keep_epochs(TrainingSupernova& sn, const std::function<bool(std::size_t)>& keep);
 
 }  // namespace thirdrung

@@ -47,7 +47,7 @@ class Choices(unittest.TestCase):
 
     def warned_of_errors(self):
         with open(os.path.join(self.folder, "results", "summary.json"), encoding="utf-8") as text:
-            return [line for line in json.load(text)["warnings"] if "Measured errors" in line]
+            return [line for line in json.load(text)["warnings"] if "scatter by more" in line]
 
     def test_errors_stated_too_small(self):
         photometry = os.path.join(self.folder, "data", "lightcurves", "larkspur.ecsv")
@@ -68,7 +68,7 @@ class Choices(unittest.TestCase):
         self.assertLess(error, 0.1 * found)
         self.assertLess(abs(found - 1.6), 3.5 * error)
         self.assertEqual(len(self.warned_of_errors()), 1)
-        self.assertIn("larkspur lark-g, too small", self.warned_of_errors()[0])
+        self.assertIn("larkspur lark-g, errors too small", self.warned_of_errors()[0])
         errors = [float(row["flux_error"]) for row in table(self.folder, "lightcurve-points")
                   if row["passband"] == "lark-g"]
         self.a_b(text=RUN.replace(key, key + "error_scale = {lark-g = 1.6}\n"))

@@ -172,28 +172,36 @@ TEST_CASE("a run that joins by calibrators is blind, and names their files") {
 TEST_CASE("errors of a survey are multiplied for all passbands, or for those named") {
   using Catch::Matchers::Contains;
   const auto light_curves = [] {
-    std::vector<LightCurve> out(1);
-    out[0].passbands = {"north-b", "north-r"};
-    out[0].epochs = {{57000, 0, 10, 1, 1}, {57001, 1, 20, 2, 2}};
+    Photometry out{std::vector<LightCurve>(1), {}};
+    out.light_curves[0].passbands = {"north-b", "north-r"};
+    out.light_curves[0].epochs = {{57000, 0, 10, 1, 1}, {57001, 1, 20, 2, 2}};
     return out;
   };
+  PassbandCatalogue catalogue;
+  for (const std::string id : {"north-b", "north-g", "north-r"})
+    catalogue.add({Passband(id, {4000, 5000, 6000}, {0, 1, 0}, Response::photon, "invented")});
   auto all = light_curves();
-  read(smallest + "error_scale = 1.5\n").surveys[0].error_scale.apply(all);
-  CHECK(all[0].epochs[0].flux_error == 1.5);
-  CHECK(all[0].epochs[1].flux_error == 3.0);
-  CHECK(all[0].epochs[1].flux == 20);
+  read(smallest + "error_scale = 1.5\n").surveys[0].error_scale.apply(all, catalogue);
+  CHECK(all.light_curves[0].epochs[0].flux_error == 1.5);
+  CHECK(all.light_curves[0].epochs[1].flux_error == 3.0);
+  CHECK(all.light_curves[0].epochs[1].flux == 20);
   auto one = light_curves();
-  read(smallest + "error_scale = {north-r = 1.25}\n").surveys[0].error_scale.apply(one);
-  CHECK(one[0].epochs[0].flux_error == 1.0);
-  CHECK(one[0].epochs[1].flux_error == 2.5);
+  read(smallest + "error_scale = {north-r = 1.25}\n").surveys[0].error_scale.apply(one, catalogue);
+  CHECK(one.light_curves[0].epochs[0].flux_error == 1.0);
+  CHECK(one.light_curves[0].epochs[1].flux_error == 2.5);
   auto none = light_curves();
-  read(smallest).surveys[0].error_scale.apply(none);
-  CHECK(none[0].epochs[1].flux_error == 2.0);
+  read(smallest).surveys[0].error_scale.apply(none, catalogue);
+  CHECK(none.light_curves[0].epochs[1].flux_error == 2.0);
 
   auto wrong = light_curves();
   const ErrorScale scale = read(smallest + "error_scale = {north-g = 1.25}\n").surveys[0].error_scale;
-  CHECK_THROWS_WITH(scale.apply(wrong), Contains("row 9") && Contains("north-g"));
-  CHECK(wrong[0].epochs[1].flux_error == 2.0);
+  CHECK_THROWS_WITH(scale.apply(wrong, catalogue), Contains("row 9") && Contains("north-g"));
+  CHECK(wrong.light_curves[0].epochs[1].flux_error == 2.0);
+  // A supernova that was set aside may have been the one with that passband; no supernova has one without a curve.
+  wrong.set_aside.push_back({"n-1", "north", "a value that is not a number"});
+  CHECK_NOTHROW(scale.apply(wrong, catalogue));
+  const ErrorScale unknown = read(smallest + "error_scale = {north-y = 1.25}\n").surveys[0].error_scale;
+  CHECK_THROWS_WITH(unknown.apply(wrong, catalogue), Contains("north-y"));
   CHECK_THAT(fault(smallest + "error_scale = 0\n"), Contains("row 9") && Contains("from 0.1 to 10"));
   CHECK_THAT(fault(smallest + "error_scale = \"big\"\n"), Contains("error_scale"));
   CHECK_THAT(fault(smallest + "error_scale = {north-r = -1}\n"), Contains("north-r") && Contains("from 0.1 to 10"));

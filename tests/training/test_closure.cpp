@@ -142,13 +142,13 @@ TEST_CASE("closure: template and supernovae come back within their errors", "[cl
   CHECK(pulls > 0.75);
 }
 
-// The same over six samples, a minute: pulls of width 1 within a tenth, biases within 0.3 (s) and 0.2 (c) of an error.
-// The mean of six zeros of s is itself known to 0.2. Not run by default; docs/template.md has its figures.
-TEST_CASE("closure of six samples", "[.six]") {
+// The same over 24 samples, a quarter of an hour: pulls of width 1 within a tenth, biases within 0.2 of an error; the
+// mean of 24 zeros of s is itself known to 0.1. Not run by default; docs/template.md has its figures.
+TEST_CASE("closure of 24 samples", "[.many]") {
   double square = 0;
   double s_pull = 0;
   double c_pull = 0;
-  constexpr unsigned samples = 6;
+  constexpr unsigned samples = 24;
   for (unsigned seed = 1; seed <= samples; ++seed) {
     const Closure closure = train_again(0.1, seed);
     const double pulls = band_pulls(closure);
@@ -162,7 +162,7 @@ TEST_CASE("closure of six samples", "[.six]") {
   }
   WARN("together: pulls " << std::sqrt(square) << ", s " << s_pull << ", c " << c_pull);
   CHECK(std::sqrt(square) == Approx(1).margin(0.1));
-  CHECK(std::abs(s_pull) < 0.3);
+  CHECK(std::abs(s_pull) < 0.2);
   CHECK(std::abs(c_pull) < 0.2);
 }
 

@@ -1,6 +1,7 @@
 #include <Eigen/Dense>
 #include <catch2/catch.hpp>
 
+#include "training/error_factors.h"
 #include "training/scatter_fit.h"
 #include "training/small_training.h"
 
@@ -192,6 +193,42 @@ TEST_CASE("errors stated too small are found out, and the scatter beside them is
   const auto together =
       error_factors(simulated.truth, set.supernovae, set.unknowns, {}, TemplateScatter::estimated_along, {}, 2);
   for (std::size_t b = 0; b < alone.size(); ++b) CHECK(alone[b].factor == together[b].factor);
+}
+
+TEST_CASE("wild epochs do not count as errors stated too small, and errors far too small are not called wild") {
+  SimulatedTrainingOptions how;
+  how.supernovae = 120;
+  how.noise = 0.02;
+  how.seed = 5;
+  const SimulatedTraining simulated = simulated_training(how);
+  const PreparedTraining prepared_set = prepared(simulated);
+  FittedSet set{prepared_set.supernovae, prepared_set.unknowns};
+  scale_errors(set.supernovae, "heron", "blue", 1 / 2.5);
+  for (std::size_t k = 0; k < set.supernovae.size(); k += 4) {
+    TrainingEpoch& wild = set.supernovae[k].epochs[set.supernovae[k].bands.back().begin + 2];
+    wild.flux += 25 * wild.flux_error;
+  }
+  for (const ErrorFactor& f : error_factors_of_fits(simulated.truth, set, 2)) {
+    INFO(f.survey << " " << f.passband << " " << f.factor << " " << f.error);
+    const double truth = f.survey == "heron" && f.passband == "blue" ? 2.5 : 1.0;
+    CHECK(std::abs(f.factor - truth) < 3.5 * f.error);
+    CHECK(f.error < 0.1 * truth);
+  }
+}
+
+TEST_CASE("factors on errors are found with a template that states no scatter") {
+  SimulatedTrainingOptions how;
+  how.supernovae = 60;
+  how.scatter = false;
+  const SimulatedTraining simulated = simulated_training(how);
+  const PreparedTraining set = prepared(simulated);
+  SpectralTemplate model = simulated.truth;
+  model.log_epoch_scatter.resize(0, 0);
+  model.log_colour_scatter.resize(0);
+  const auto factors = error_factors_of_fits(model, {set.supernovae, set.unknowns}, 1);
+  CHECK(factors.size() == 9);
+  for (const ErrorFactor& f : factors) CHECK(std::abs(f.factor - 1) < 3.5 * f.error);
+  CHECK(error_factors_of_fits(model, {}, 1).empty());
 }
 
 }  // namespace thirdrung::testing
