@@ -87,7 +87,7 @@ def benchmark(name, count, systematics, flows):
         print("%s: %d supernovae%s%s" % (name, count, ", 60 systematics" if systematics else "",
                                          ", full covariance" if flows else ""))
         fits = timed("fit", path("run.toml"))
-        print("  %-12s %7.1f s  (%.1f s of processor)  not counted below" % (("fit",) + fits[:2]), flush=True)
+        print("  %-12s %7.1f s  (%.1f s of processor)  %5.0f MB, not counted below" % ("fit", *fits), flush=True)
         total = [0.0, 0.0, 0.0]
         for stage in ["select", "standardise"] + (["shift"] if systematics else []) + ["intercept", "scan"]:
             wall, processor, memory = timed(stage, path("run.toml"))
