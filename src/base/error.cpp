@@ -16,7 +16,7 @@ std::string sentence(const Place& place, const std::string& fault, const std::st
   if (!place.column.empty()) add(fmt::format("column {}", place.column));
   std::string text = where.empty() ? fault : where + ": " + fault;
   if (!remedy.empty()) text += "; " + remedy;
-  if (!text.empty() && text.back() != '.') text += '.';
+  if (!text.empty() && text.back() != '.' && text.back() != '?') text += '.';
   return text;
 }
 

@@ -39,6 +39,10 @@ void ErrorScale::apply(Photometry& photometry, const PassbandCatalogue& catalogu
 ErrorScale read_error_scale(RunSection& survey) {
   const std::string key = "error_scale";
   ErrorScale out{survey.place(key), 1, {}};
+  if (survey.is_list(key)) {
+    throw InputError(survey.place(key), "error_scale of [[survey]] is a list",
+                     "give one number, or { passband = number }");
+  }
   if (!survey.is_table(key)) {
     out.of_all = survey.number_between(key, 1, least_factor, most_factor);
     return out;

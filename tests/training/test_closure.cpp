@@ -41,6 +41,12 @@ Closure train_again(double c_width, unsigned seed = 1) {
   return out;
 }
 
+/// The trainer makes the mean of its set s = 1; a set that lost a supernova to the cuts has another mean than the
+/// sample.
+void meet_convention(Eigen::VectorXd& true_s) {
+  true_s.array() += 1 - true_s.mean();
+}
+
 /// Pairs of a true value and a trained one with its error.
 struct Comparison {
   Eigen::VectorXd truth, trained, error;
@@ -72,6 +78,7 @@ Comparison compare(const Closure& closure, double SupernovaUnknowns::*trained, d
     out.trained(k) = unknowns.*trained;
     out.error(k) = std::sqrt(covariance(at, at));
   }
+  if (trained == &SupernovaUnknowns::s) meet_convention(out.truth);
   return out;
 }
 
@@ -124,8 +131,7 @@ TEST_CASE("closure: template and supernovae come back within their errors", "[cl
   CHECK(std::abs(c.mean_pull()) < 0.2);
   CHECK(c.slope() == Approx(1).margin(0.03));
   const Comparison s = compare(closure, &SupernovaUnknowns::s, &Truth::s, 2);
-  // The zero of s varies by half an error from sample to sample (below), that of c does not.
-  CHECK(std::abs(s.mean_pull()) < 0.6);
+  CHECK(std::abs(s.mean_pull()) < 0.2);
   // The scale of s to 5%: a light curve of five days' cadence knows it half as well as that of c.
   CHECK(s.slope() == Approx(1).margin(0.05));
   // The widths that were put in, which the trainer finds for whoever sets the prior.
@@ -142,8 +148,7 @@ TEST_CASE("closure: template and supernovae come back within their errors", "[cl
   CHECK(pulls > 0.75);
 }
 
-// The same over 24 samples, a quarter of an hour: pulls of width 1 within a tenth, biases within 0.2 of an error; the
-// mean of 24 zeros of s is itself known to 0.1. Not run by default; docs/template.md has its figures.
+// The same over 24 samples, a quarter of an hour. Not run by default; docs/template.md has its figures.
 TEST_CASE("closure of 24 samples", "[.many]") {
   double square = 0;
   double s_pull = 0;
@@ -162,8 +167,8 @@ TEST_CASE("closure of 24 samples", "[.many]") {
   }
   WARN("together: pulls " << std::sqrt(square) << ", s " << s_pull << ", c " << c_pull);
   CHECK(std::sqrt(square) == Approx(1).margin(0.1));
-  CHECK(std::abs(s_pull) < 0.2);
-  CHECK(std::abs(c_pull) < 0.2);
+  CHECK(std::abs(s_pull) < 0.1);
+  CHECK(std::abs(c_pull) < 0.1);
 }
 
 // The marginal likelihood needs to know how wide the population is (docs/template.md, "Where it may be trusted"): what
