@@ -49,8 +49,9 @@ def write_page(folder, output, *more):
 def see_all_charts(b):
     """Scrolls through the page as a reader would; each chart must have drawn itself."""
     for k in range(b.run("document.querySelectorAll('.plot').length")):
-        b.run("document.querySelectorAll('.plot')[%d].scrollIntoView({block: 'center'})" % k)
-        b.wait("document.querySelectorAll('.plot')[%d].dataset.drawn === 'yes'" % k)
+        # Charts above that draw themselves late push this one out of view: it is scrolled to until it is drawn.
+        b.wait("((plot) => (plot.scrollIntoView({block: 'center'}), plot.dataset.drawn === 'yes'))"
+               "(document.querySelectorAll('.plot')[%d])" % k)
 
 
 def box(b, selector):
