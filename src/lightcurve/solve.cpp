@@ -158,7 +158,7 @@ void judge(const Problem& problem, const Eigen::VectorXd& data, Solution& out) {
   Selection kept;
   std::vector<double> model, left;
   for (std::size_t k = 0; k < out.selection.size(); ++k) {
-    if (!out.weights.empty() && out.weights[k] < problem.options.mistrust_below) continue;
+    if (out.weights[k] < problem.options.mistrust_below) continue;
     const auto i = static_cast<Eigen::Index>(k);
     kept.push_back(out.selection[k]);
     model.push_back(out.flux[i]);

@@ -20,6 +20,14 @@ void scale_errors(std::vector<TrainingSupernova>& supernovae, const std::string&
   }
 }
 
+SimulatedTraining many_supernovae() {
+  SimulatedTrainingOptions how;
+  how.supernovae = 120;
+  how.noise = 0.02;
+  how.seed = 5;
+  return simulated_training(how);
+}
+
 }  // namespace
 
 TEST_CASE("factors on measured errors are where the restricted likelihood, from full matrices, is stationary") {
@@ -54,11 +62,7 @@ TEST_CASE("factors on measured errors are where the restricted likelihood, from 
 }
 
 TEST_CASE("errors stated too small are found out, and the scatter beside them is not changed by it") {
-  SimulatedTrainingOptions how;
-  how.supernovae = 120;
-  how.noise = 0.02;
-  how.seed = 5;
-  const SimulatedTraining simulated = simulated_training(how);
+  const SimulatedTraining simulated = many_supernovae();
   PreparedTraining set = prepared(simulated);
   scale_errors(set.supernovae, "heron", "blue", 1 / 1.5);
   for (const TemplateScatter scatter : {TemplateScatter::estimated_along, TemplateScatter::held}) {
@@ -80,11 +84,7 @@ TEST_CASE("errors stated too small are found out, and the scatter beside them is
 }
 
 TEST_CASE("wild epochs do not count as errors stated too small, and errors far too small are not called wild") {
-  SimulatedTrainingOptions how;
-  how.supernovae = 120;
-  how.noise = 0.02;
-  how.seed = 5;
-  const SimulatedTraining simulated = simulated_training(how);
+  const SimulatedTraining simulated = many_supernovae();
   const PreparedTraining prepared_set = prepared(simulated);
   FittedSet set{prepared_set.supernovae, prepared_set.unknowns};
   scale_errors(set.supernovae, "heron", "blue", 1 / 2.5);
